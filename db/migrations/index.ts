@@ -1,0 +1,4 @@
+import type { Migration } from '../migrate.ts';
+
+/** Every migration, oldest first. */
+export const migrations: Migration[] = [];
