@@ -1,0 +1,26 @@
+import { migrateDatabase, revertDatabase } from '#db/migrate.ts';
+
+/** Maintenance of the database from a terminal: `migrate`, `revert [steps]`. Exit code 1 with one line when it fails. */
+async function run(command: string | undefined, argument: string | undefined): Promise<void> {
+  const url = process.env['DATABASE_URL'];
+  if (!url) throw new Error('DATABASE_URL is not set: give the address of the database.');
+  const say = (message: string) => console.log(message);
+  switch (command) {
+    case 'migrate':
+      await migrateDatabase({ url, onStep: say });
+      return;
+    case 'revert':
+      await revertDatabase({ url, onStep: say, ...(argument !== undefined && { steps: Number(argument) }) });
+      return;
+    default:
+      throw new Error('Give one of: migrate, revert [steps].');
+  }
+}
+
+try {
+  await run(process.argv[2], process.argv[3]);
+} catch (error) {
+  console.error(error instanceof Error ? error.message : String(error));
+  if (process.env['SELVAGE_LOG_LEVEL'] === 'debug') console.error(error);
+  process.exitCode = 1;
+}
