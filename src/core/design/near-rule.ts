@@ -1,8 +1,9 @@
 import { NumericalError } from '#core/errors.ts';
-import { atan2, cos, sin } from '#core/geometry/deterministic-math.ts';
+import { sin } from '#core/geometry/deterministic-math.ts';
 import type { CoordinateReference } from '#core/geometry/mesh.ts';
 
 import { createPointGrid } from './point-grid.ts';
+import { lonLatOfVector, writeUnitVector } from './unit-vector.ts';
 
 /** What the near-observation rule needs to know of the candidate rows; arrays have one entry per candidate. */
 export interface Candidates {
@@ -22,8 +23,6 @@ export interface Groups {
   x: Float64Array;
   y: Float64Array;
 }
-
-const DEGREE = Math.PI / 180;
 
 /**
  * Points and reach in a space where plain distance decides: the plane in km, or unit vectors and the chord of the
@@ -47,19 +46,6 @@ const createSearchSpace = (candidates: Candidates, km: number): { points: Float6
   const angle = km / sphereRadiusKm;
   // no chord exceeds 2
   return { points, dimensions: 3, reach: angle >= Math.PI ? 3 : 2 * sin(angle / 2) };
-};
-
-const writeUnitVector = (lon: number, lat: number, out: Float64Array, at: number): void => {
-  if (lat === 90 || lat === -90) {
-    out[at] = 0;
-    out[at + 1] = 0;
-    out[at + 2] = lat / 90;
-    return;
-  }
-  const c = cos(lat * DEGREE);
-  out[at] = c * cos(lon * DEGREE);
-  out[at + 1] = c * sin(lon * DEGREE);
-  out[at + 2] = sin(lat * DEGREE);
 };
 
 /** Indices from the smallest error standard deviation to the largest (those without one last), then by index. */
@@ -230,11 +216,8 @@ const meanOnSphere = ({ x, y }: Candidates, members: Uint32Array, weights: Float
     sz += weights[k] * v[2];
     sum += weights[k];
   }
-  const horizontal = Math.sqrt(sx * sx + sy * sy);
-  if (Math.sqrt(horizontal * horizontal + sz * sz) < SHORTEST_MEAN_VECTOR * sum) return;
-  const lon = atan2(sy, sx) / DEGREE;
-  out[0] = lon >= 180 ? lon - 360 : lon;
-  out[1] = Math.max(-90, Math.min(90, atan2(sz, horizontal) / DEGREE));
+  if (Math.sqrt(sx * sx + sy * sy + sz * sz) < SHORTEST_MEAN_VECTOR * sum) return;
+  out.set(lonLatOfVector(sx, sy, sz));
 };
 
 const MOST_PAIRS_NAMED = 20;
