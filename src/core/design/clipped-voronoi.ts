@@ -93,7 +93,7 @@ const findCuts = (delaunay: Delaunay<unknown>, points: Float64Array): Map<number
 };
 
 const circumcenterRing = (delaunay: Delaunay<unknown>, circumcenters: ArrayLike<number>, i: number): number[] => {
-  const { inedges, halfedges, triangles } = delaunay;
+  const { inedges, halfedges } = delaunay;
   const ring: number[] = [];
   const start = inedges[i];
   if (start < 0) return ring;
@@ -112,7 +112,7 @@ const clipByLine = (ring: number[], points: Float64Array, a: number, b: number):
   const ay = points[2 * a + 1];
   const nx = points[2 * b + 1] - ay;
   const ny = ax - points[2 * b];
-  // hull order of the triangulation puts the inside where this is negative or zero
+  // the order of the hull puts its inside where this is positive or zero
   const side = (x: number, y: number): number => nx * (x - ax) + ny * (y - ay);
   const out: number[] = [];
   for (let k = 0; k < ring.length; k += 2) {
@@ -123,11 +123,11 @@ const clipByLine = (ring: number[], points: Float64Array, a: number, b: number):
     const y = ring[k + 1];
     const before = side(px, py);
     const here = side(x, y);
-    if (before > 0 !== here > 0) {
+    if (before < 0 !== here < 0) {
       const t = before / (before - here);
       out.push(px + t * (x - px), py + t * (y - py));
     }
-    if (here <= 0) out.push(x, y);
+    if (here >= 0) out.push(x, y);
   }
   return out;
 };
