@@ -31,9 +31,9 @@ async function main() {
     if (port !== wanted) say(`Port ${wanted} is taken; using ${port}.`);
     const env = childEnvironment({ folder, url: database.url, port });
     const tsx = ['--import', 'tsx'];
-    manage([...tsx, 'src/server/manage/main.ts', 'migrate'], env);
+    manage([...tsx, 'src/server/manage/main.ts', 'prepare'], env);
     lock.note(`http://127.0.0.1:${port}`);
-    processes.node('web server', ['node_modules/astro/astro.js', 'dev', '--port', String(port), '--host', env.HOST], { env, patience: 3_000 });
+    processes.node('web server', ['node_modules/astro/astro.js', 'dev', '--port', String(port), '--host', env.HOST], { env: { ...env, ASTRO_TELEMETRY_DISABLED: '1', ASTRO_DISABLE_UPDATE_CHECK: 'true' }, patience: 3_000 });
     if (fs.existsSync(path.join(ROOT, 'src/worker/main.ts'))) processes.node('worker', [...tsx, 'src/worker/main.ts'], { env });
     say(`Selvage (development): http://${env.HOST}:${port}   sign-ins: ${DEMO_ACCOUNTS.join(', ')}   password: ${env.SELVAGE_DEMO_PASSWORD}`);
   } catch (error) {

@@ -1,11 +1,12 @@
 import { migrateDatabase, revertDatabase } from '#db/migrate.ts';
 
-/** Maintenance of the database from a terminal: `migrate`, `revert [steps]`. Exit code 1 with one line when it fails. */
+/** Maintenance of the database from a terminal: `prepare` (before a start), `migrate`, `revert [steps]`. Exit code 1 with one line when it fails. */
 async function run(command: string | undefined, argument: string | undefined): Promise<void> {
   const url = process.env['DATABASE_URL'];
   if (!url) throw new Error('DATABASE_URL is not set: give the address of the database.');
   const say = (message: string) => console.log(message);
   switch (command) {
+    case 'prepare':
     case 'migrate':
       await migrateDatabase({ url, onStep: say });
       return;
@@ -13,7 +14,7 @@ async function run(command: string | undefined, argument: string | undefined): P
       await revertDatabase({ url, onStep: say, ...(argument !== undefined && { steps: Number(argument) }) });
       return;
     default:
-      throw new Error('Give one of: migrate, revert [steps].');
+      throw new Error('Give one of: prepare, migrate, revert [steps].');
   }
 }
 
