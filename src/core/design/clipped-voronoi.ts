@@ -33,12 +33,8 @@ export const clipVoronoi = (points: Float64Array): ClippedVoronoi => {
 
   const area = new Float64Array(count);
   const centroid = points.slice();
-  const nearest = new Int32Array(count);
-  for (let i = 0; i < count; i++) {
-    measure(cell(i), i, area, centroid);
-    nearest[i] = nearestNeighbour(delaunay, points, i);
-  }
-  return { area, centroid, nearest, cell };
+  for (let i = 0; i < count; i++) measure(cell(i), i, area, centroid);
+  return { area, centroid, nearest: nearestNeighbours(delaunay, points), cell };
 };
 
 const boundsOf = (points: Float64Array): [number, number, number, number] => {
@@ -156,17 +152,23 @@ const measure = (ring: number[], i: number, area: Float64Array, centroid: Float6
   centroid[2 * i + 1] += my / (3 * twice);
 };
 
-/** The nearest point is always a Delaunay neighbour. */
-const nearestNeighbour = (delaunay: Delaunay<unknown>, points: Float64Array, i: number): number => {
-  let nearest = -1;
-  let least = Infinity;
-  for (const j of delaunay.neighbors(i)) {
+/** The nearest point is always a Delaunay neighbour (of equally near ones the lowest index is taken). */
+const nearestNeighbours = ({ triangles }: Delaunay<unknown>, points: Float64Array): Int32Array => {
+  const nearest = new Int32Array(points.length / 2).fill(-1);
+  const least = new Float64Array(points.length / 2).fill(Infinity);
+  const offer = (i: number, j: number, distance2: number): void => {
+    if (distance2 > least[i] || (distance2 === least[i] && j > nearest[i])) return;
+    least[i] = distance2;
+    nearest[i] = j;
+  };
+  for (let e = 0; e < triangles.length; e++) {
+    const i = triangles[e];
+    const j = triangles[e % 3 === 2 ? e - 2 : e + 1];
     const dx = points[2 * j] - points[2 * i];
     const dy = points[2 * j + 1] - points[2 * i + 1];
     const distance2 = dx * dx + dy * dy;
-    if (distance2 >= least) continue;
-    least = distance2;
-    nearest = j;
+    offer(i, j, distance2);
+    offer(j, i, distance2);
   }
   return nearest;
 };
