@@ -66,7 +66,7 @@ export async function openPrivatePostgres({ folder, throwaway = false, onNotice 
   const data = dataFolder(folder, account);
   const passwords = keepPasswords(folder);
   const isNew = !fs.existsSync(path.join(data, 'PG_VERSION'));
-  if (isNew) initialise({ bin: installed[0].bin, data, folder, account, password: passwords.superuser, throwaway });
+  if (isNew) initialise({ bin: installed[0].bin, data, account, password: passwords.superuser, throwaway });
   const major = Number(fs.readFileSync(path.join(data, 'PG_VERSION'), 'utf8'));
   const programs = installed.find((one) => one.major === major);
   if (programs === undefined)
@@ -139,7 +139,7 @@ function keepPasswords(folder) {
   return passwords;
 }
 
-function initialise({ bin, data, folder, account, password, throwaway }) {
+function initialise({ bin, data, account, password, throwaway }) {
   const passwordFile = path.join('/tmp', `selvage-${randomBytes(8).toString('hex')}`);
   fs.writeFileSync(passwordFile, `${password}\n`, { mode: 0o600, flag: 'wx' });
   if (account !== undefined) fs.chownSync(passwordFile, account.uid, account.gid);
