@@ -79,8 +79,10 @@ async function answer(app: AppHandler, request: IncomingMessage, response: Serve
 
 const isEventStream = (response: ServerResponse) => String(response.getHeader('content-type') ?? '').startsWith('text/event-stream');
 
+/** Text only: arrays of numbers gain little for much processor time. */
 function isCompressible(request: IncomingMessage, response: ServerResponse): boolean {
-  return !isEventStream(response) && compression.filter(request as never, response as never);
+  const isBinary = String(response.getHeader('content-type') ?? '').startsWith('application/octet-stream');
+  return !isEventStream(response) && !isBinary && compression.filter(request as never, response as never);
 }
 
 function logAccess(log: Logger, request: IncomingMessage, response: ServerResponse, requestId: string, ms: number): void {
