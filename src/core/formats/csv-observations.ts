@@ -11,7 +11,7 @@ import { createObservationRows, explainLabel, LABEL_FIELDS, NUMBER_FIELDS } from
 import { explainCoordinate, parseCoordinate, placeDegrees } from './parse-coordinate.ts';
 import type { Axis } from './parse-coordinate.ts';
 import { explainNumber, parseNumberBytes } from './parse-number.ts';
-import { explainTime, parseTime } from './parse-time.ts';
+import { explainTime, parseTimeBytes } from './parse-time.ts';
 
 export { sniffCsv } from './csv-sniff.ts';
 export type { CsvHints, CsvSniff } from './csv-sniff.ts';
@@ -191,7 +191,7 @@ const createRowReader = (mapping: Mapping, sniff: CsvSniff, rows: ObservationRow
     const column = numberColumns[k];
     if (column === undefined || record.fieldStart[column] === record.fieldEnd[column]) return true;
     if (field === 'time') {
-      numbers[k] = parseTime(fieldText(record, column));
+      numbers[k] = parseTimeBytes(record.bytes, record.fieldStart[column], record.fieldEnd[column], () => fieldText(record, column));
       if (Number.isNaN(numbers[k])) rejectField(record, column, explainTime(fieldText(record, column)));
     } else {
       numbers[k] = parseNumberBytes(record.bytes, record.fieldStart[column], record.fieldEnd[column], decimalComma);

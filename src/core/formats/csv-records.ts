@@ -103,10 +103,12 @@ export const createCsvSplitter = (delimiter: Delimiter, onRecord: (record: CsvRe
     record.fieldCount = 0;
     record.hasNonAscii = false;
     record.problem = 'none';
+    hasQuoted = false;
     let at = isSpaced ? skipGap(from) : from;
     for (;;) {
       const open = skipOuter(at);
       if (open < bytes.length && bytes[open] === QUOTE) {
+        hasQuoted = true;
         const close = scanQuoted(open + 1);
         if (close < 0) return -1;
         closeField(open + 1, close, quotedHasDouble);
@@ -132,6 +134,8 @@ export const createCsvSplitter = (delimiter: Delimiter, onRecord: (record: CsvRe
   };
 
   let quotedHasDouble = false;
+  /** Whether the row has a quoted field, which may hold line ends. */
+  let hasQuoted = false;
   /** Position of the quote that closes the field, or -1. */
   const scanQuoted = (from: number): number => {
     quotedHasDouble = false;
@@ -197,6 +201,7 @@ export const createCsvSplitter = (delimiter: Delimiter, onRecord: (record: CsvRe
         continue;
       }
       const isComment = isBeforeFirstRow && bytes[at] === HASH;
+      if (isComment) hasQuoted = false;
       let end = isComment ? lineEnd(at) : scanRow(at, isLast);
       if (isComment && end >= bytes.length && !isLast) end = -1;
       let next = end < 0 ? -1 : afterLineEnd(end, isLast);
@@ -216,7 +221,7 @@ export const createCsvSplitter = (delimiter: Delimiter, onRecord: (record: CsvRe
       const isEmpty = !isComment && problem === 'none' && record.fieldCount === 1 && fieldStart[0] === fieldEnd[0] && bytes[at] !== QUOTE;
       if (!isComment && !isEmpty) emit(at, end, problem);
       if (isCut) isSkipping = true;
-      else line += countLines(at, next);
+      else line += hasQuoted ? countLines(at, next) : 1;
       at = next;
     }
   };

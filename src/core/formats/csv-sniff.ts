@@ -153,8 +153,20 @@ const decoder = new TextDecoder('utf-8');
 
 /** Text of field k; bytes that are not UTF-8 become replacement characters. */
 export const fieldText = (record: CsvRecord, k: number): string => {
-  const text = decoder.decode(record.bytes.subarray(record.fieldStart[k], record.fieldEnd[k]));
+  const start = record.fieldStart[k];
+  const end = record.fieldEnd[k];
+  const text =
+    record.hasNonAscii || end - start > SHORT ? decoder.decode(record.bytes.subarray(start, end)) : asciiText(record.bytes, start, end);
   return record.hasDoubledQuote[k] ? text.replaceAll('""', '"') : text;
+};
+
+/** Up to this length building a string beats the decoder's call. */
+const SHORT = 32;
+
+const asciiText = (bytes: Uint8Array, start: number, end: number): string => {
+  let text = '';
+  for (let i = start; i < end; i++) text += String.fromCharCode(bytes[i]);
+  return text;
 };
 
 const fieldTexts = (record: CsvRecord): string[] => Array.from({ length: record.fieldCount }, (_, k) => fieldText(record, k));

@@ -62,19 +62,24 @@ const createLabels = () => {
   };
 };
 
-/** Cut, with control characters and lone surrogates made visible, so that any database can hold it. */
+const LONE_SURROGATE = /[\ud800-\udbff](?![\udc00-\udfff])|(?<![\ud800-\udbff])[\udc00-\udfff]/g;
+// eslint-disable-next-line no-control-regex
+const CONTROL = /[\u0000-\u001f\u007f]/g;
+// eslint-disable-next-line no-control-regex
+const SUSPECT = /[\u0000-\u001f\u007f\ud800-\udfff]/;
+
+/** Cut, with control characters and halves of surrogate pairs made visible, so that any database can hold it. */
 export const showText = (text: string): string =>
   text
     .slice(0, LONGEST_FOUND)
-    // eslint-disable-next-line no-control-regex
-    .replace(/[\u0000-\u001f]/g, (c) => String.fromCharCode(0x2400 + c.charCodeAt(0)))
-    .replace(/\u007f/g, '\u2421')
-    .replace(/[\ud800-\udbff](?![\udc00-\udfff])|(?<![\ud800-\udbff])[\udc00-\udfff]/g, '\ufffd');
+    .replace(CONTROL, (c) => (c === '\u007f' ? '\u2421' : String.fromCharCode(0x2400 + c.charCodeAt(0))))
+    .replace(LONE_SURROGATE, '\ufffd');
 
 /** Why a label cannot be kept; null when it can. */
 export const explainLabel = (label: string): string | null => {
   if (label.length > LONGEST_LABEL) return `This label has more than ${LONGEST_LABEL} characters. Shorten it.`;
-  if (showText(label) !== label) return 'This label holds a control character or half a character. Remove it.';
+  if (SUSPECT.test(label) && showText(label) !== label)
+    return 'This label holds a control character or half a character. Remove it.';
   return null;
 };
 

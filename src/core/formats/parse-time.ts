@@ -8,8 +8,9 @@ const LATEST = 253_402_300_800;
 
 const DAYS_BEFORE_MONTH = [0, 31, 59, 90, 120, 151, 181, 212, 243, 273, 304, 334];
 const isLeapYear = (year: number): boolean => (year % 4 === 0 && year % 100 !== 0) || year % 400 === 0;
+const DAYS_IN_MONTH = [31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31];
 const daysInMonth = (year: number, month: number): number =>
-  month === 2 ? (isLeapYear(year) ? 29 : 28) : [4, 6, 9, 11].includes(month) ? 30 : 31;
+  month === 2 && isLeapYear(year) ? 29 : DAYS_IN_MONTH[month - 1];
 
 /** Days from 1970-01-01 to a day of the proleptic Gregorian calendar. */
 const dayNumber = (year: number, month: number, day: number): number => {
@@ -30,15 +31,45 @@ export const parseTime = (text: string): number => {
   return seconds >= EARLIEST && seconds < LATEST ? seconds : NaN;
 };
 
-const calendarSeconds = (parts: RegExpExecArray): number => {
-  const [year, month, day, hour, minute, second] = parts.slice(1, 7).map((part) => Number(part ?? 0));
+/** The same of bytes, by a short way for whole seconds with a Z or without a zone: 2026-12-31T23:59:59Z. */
+export const parseTimeBytes = (bytes: Uint8Array, start: number, end: number, text: () => string): number => {
+  const length = end - start;
+  const isPlain =
+    (length === 19 || (length === 20 && bytes[end - 1] === 0x5a)) &&
+    bytes[start + 4] === 0x2d &&
+    bytes[start + 7] === 0x2d &&
+    (bytes[start + 10] === 0x54 || bytes[start + 10] === 0x20) &&
+    bytes[start + 13] === 0x3a &&
+    bytes[start + 16] === 0x3a;
+  if (!isPlain) return parseTime(text());
+  const century = twoDigits(bytes, start);
+  const year = century * 100 + twoDigits(bytes, start + 2);
+  const month = twoDigits(bytes, start + 5);
+  const day = twoDigits(bytes, start + 8);
+  const hour = twoDigits(bytes, start + 11);
+  const minute = twoDigits(bytes, start + 14);
+  const second = twoDigits(bytes, start + 17);
+  if (Number.isNaN(year + month + day + hour + minute + second)) return NaN;
+  return secondsOf(year, month, day, hour, minute, second);
+};
+
+const twoDigits = (bytes: Uint8Array, at: number): number => {
+  const tens = bytes[at] - 0x30;
+  const ones = bytes[at + 1] - 0x30;
+  return tens >= 0 && tens <= 9 && ones >= 0 && ones <= 9 ? tens * 10 + ones : NaN;
+};
+
+const secondsOf = (year: number, month: number, day: number, hour: number, minute: number, second: number): number => {
   if (year < 1 || month < 1 || month > 12 || day < 1 || day > daysInMonth(year, month)) return NaN;
   const isLeapSecond = minute === 59 && second === 60;
   if (hour > 23 || minute > 59 || (second > 59 && !isLeapSecond)) return NaN;
-  const offset = zoneSeconds(parts[8]);
-  // 15 digits at most: the fraction is one rounding
+  return dayNumber(year, month, day) * 86_400 + hour * 3600 + minute * 60 + second;
+};
+
+const calendarSeconds = (parts: RegExpExecArray): number => {
+  const [year, month, day, hour, minute, second] = parts.slice(1, 7).map((part) => Number(part ?? 0));
   const fraction = parts[7] ? Number(`0.${parts[7]}`) : 0;
-  return dayNumber(year, month, day) * 86_400 + hour * 3600 + minute * 60 + second - offset + fraction;
+  return secondsOf(year, month, day, hour, minute, second) - zoneSeconds(parts[8]) + fraction;
 };
 
 const zoneSeconds = (zone: string | undefined): number => {
