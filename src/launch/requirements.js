@@ -52,15 +52,15 @@ function matchesLock(lock, recorded) {
 }
 
 /** Finds PostgreSQL server programs, or installs Debian's when this account may. */
-export function ensurePostgres(say) {
-  if (findPostgres().length > 0) return;
+export function ensurePostgres(say, find = findPostgres) {
+  if (find().length > 0) return;
   // Without this the package would create and start a cluster of its own, which nothing here needs.
   const keepOut = '/etc/postgresql-common/createcluster.d/selvage.conf';
   installDebian(['postgresql'], 'PostgreSQL', say, {
     before: `mkdir -p ${path.dirname(keepOut)} && echo 'create_main_cluster = false' > ${keepOut}`,
     after: `rm -f ${keepOut}`,
   });
-  if (findPostgres().length === 0) throw new StartError('The package postgresql is installed, but its programs initdb and postgres were not found. Put their folder on PATH and start again.');
+  if (find().length === 0) throw new StartError('The package postgresql is installed, but its programs initdb and postgres were not found. Put their folder on PATH and start again.');
 }
 
 /** Path of Chromium; installs Debian's when it is missing and this account may. */

@@ -1,3 +1,5 @@
+import { ConnectionError } from 'sequelize';
+
 import { migrateDatabase, revertDatabase } from '#db/migrate.ts';
 
 /** Maintenance of the database from a terminal: `prepare` (before a start), `migrate`, `revert [steps]`. Exit code 1 with one line when it fails. */
@@ -18,10 +20,18 @@ async function run(command: string | undefined, argument: string | undefined): P
   }
 }
 
+function explain(error: unknown): string {
+  if (error instanceof ConnectionError) {
+    const cause = error.original as Error & { code?: string };
+    return `The database of DATABASE_URL cannot be reached: ${error.message || cause.message || cause.code}. Check the address, the password, and that the server runs.`;
+  }
+  return error instanceof Error ? error.message : String(error);
+}
+
 try {
   await run(process.argv[2], process.argv[3]);
 } catch (error) {
-  console.error(error instanceof Error ? error.message : String(error));
+  console.error(explain(error));
   if (process.env['SELVAGE_LOG_LEVEL'] === 'debug') console.error(error);
   process.exitCode = 1;
 }

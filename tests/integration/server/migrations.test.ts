@@ -56,6 +56,25 @@ describe('migrations', () => {
     }
   });
 
+  it('say what an administrator has to run when the account may not create the runtime role', async () => {
+    const other = await createTestDatabase({ empty: true });
+    const login = `${other.name}_owner`;
+    try {
+      await other.query(`CREATE ROLE ${login} LOGIN PASSWORD 'x'`);
+      await other.query(`ALTER DATABASE ${other.name} OWNER TO ${login}`);
+      const url = new URL(other.url);
+      url.username = login;
+      url.password = 'x';
+      await expect(migrateDatabase({ url: url.href })).rejects.toThrow(`GRANT selvage_runtime TO "${login}";`);
+      await other.query(`GRANT selvage_runtime TO ${login}`);
+      await other.query(`ALTER SCHEMA public OWNER TO ${login}`);
+      expect(await migrateDatabase({ url: url.href })).toEqual(migrations.map((migration) => migration.name));
+    } finally {
+      await other.drop();
+      await database.query(`DROP ROLE IF EXISTS ${login}`);
+    }
+  });
+
   it('have names that sort in the order in which they run', () => {
     const names = migrations.map((migration) => migration.name);
     expect(names).toEqual([...names].sort());
