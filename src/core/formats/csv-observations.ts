@@ -7,7 +7,7 @@ import type { CsvSniff } from './csv-sniff.ts';
 import type { ColumnChoice, Mapping, ReadOptions, ReadResult } from './mapping.ts';
 import { ATTRIBUTE_FIELDS } from './mapping.ts';
 import type { NumberField, ObservationRows } from './observation-rows.ts';
-import { createObservationRows, explainLabel, LABEL_FIELDS, NUMBER_FIELDS } from './observation-rows.ts';
+import { createObservationRows, explainLabel, LABEL_FIELDS, NUMBER_FIELDS, tidyLabel } from './observation-rows.ts';
 import { explainCoordinate, parseCoordinate, placeDegrees } from './parse-coordinate.ts';
 import type { Axis } from './parse-coordinate.ts';
 import { explainNumber, parseNumberBytes } from './parse-number.ts';
@@ -206,7 +206,7 @@ const createRowReader = (mapping: Mapping, sniff: CsvSniff, rows: ObservationRow
 
   const readLabel = (record: CsvRecord, k: number): boolean => {
     const column = labelColumns[k];
-    labels[k] = column === undefined ? '' : fieldText(record, column);
+    labels[k] = column === undefined ? '' : tidyLabel(fieldText(record, column));
     const reason = column === undefined ? null : explainLabel(labels[k]);
     if (column !== undefined && reason) rejectField(record, column, reason);
     return reason === null;

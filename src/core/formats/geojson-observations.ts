@@ -5,7 +5,7 @@ import { NOT_POSITIVE } from './csv-observations.ts';
 import type { Mapping, ReadOptions, ReadResult } from './mapping.ts';
 import { ATTRIBUTE_FIELDS } from './mapping.ts';
 import type { ObservationRows } from './observation-rows.ts';
-import { createObservationRows, explainLabel, LABEL_FIELDS, NUMBER_FIELDS } from './observation-rows.ts';
+import { createObservationRows, explainLabel, LABEL_FIELDS, NUMBER_FIELDS, tidyLabel } from './observation-rows.ts';
 import { placeDegrees } from './parse-coordinate.ts';
 import { explainNumber, parseNumber } from './parse-number.ts';
 import { explainTime, parseTime } from './parse-time.ts';
@@ -141,7 +141,8 @@ const firstLineNotUtf8 = (bytes: Uint8Array): number => {
 const malformedJson = (text: string, cause: unknown): NumericalError => {
   const position = /position (\d+)/.exec(cause instanceof Error ? cause.message : '')?.[1];
   const line = position === undefined ? null : text.slice(0, Number(position)).split('\n').length;
-  const isCut = cause instanceof Error && /end of JSON/i.test(cause.message);
+  const isCut =
+    (cause instanceof Error && /end of JSON/i.test(cause.message)) || (position !== undefined && Number(position) >= text.trimEnd().length);
   const isSequence = /^\s*\{[^\n]*\}\s*\n\s*\{/.test(text.slice(0, 10_000));
   const where = isCut ? 'it ends too early' : line === null ? 'a bracket, comma or quote is out of place' : `see line ${line}`;
   const advice = isSequence
@@ -272,7 +273,7 @@ const readProperties = (
     const name = mapping[field];
     if (name === undefined) continue;
     const value = own(properties, String(name));
-    labels[k] = textOf(value).trim();
+    labels[k] = tidyLabel(textOf(value).trim());
     const reason = typeof value === 'object' && value !== null ? 'A label is text or a number. Give one.' : explainLabel(labels[k]);
     if (reason === null) continue;
     rows.reject(line, String(name), labels[k], reason);

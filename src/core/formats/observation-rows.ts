@@ -75,7 +75,10 @@ export const showText = (text: string): string =>
     .replace(CONTROL, (c) => (c === '\u007f' ? '\u2421' : String.fromCharCode(0x2400 + c.charCodeAt(0))))
     .replace(LONE_SURROGATE, '\ufffd');
 
-/** Why a label cannot be kept; null when it can. */
+/** A label on one line: line ends and tabs, which quoted fields may hold, become spaces. */
+export const tidyLabel = (text: string): string => (SUSPECT.test(text) ? text.replace(/\s*[\t\n\r]\s*/g, ' ').trim() : text);
+
+/** Why a tidy label cannot be kept; null when it can. */
 export const explainLabel = (label: string): string | null => {
   if (label.length > LONGEST_LABEL) return `This label has more than ${LONGEST_LABEL} characters. Shorten it.`;
   if (SUSPECT.test(label) && showText(label) !== label)

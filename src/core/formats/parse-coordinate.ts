@@ -31,7 +31,9 @@ const matchSexagesimal = (text: string): Sexagesimal | null => {
   if (!frame) return null;
   const shape = frame[3].replace(/[\d.]+/g, '#').replace(/\s+/g, ' ');
   const parts = frame[3].match(/[\d.]+/g) ?? [];
-  if (!SHAPE.test(shape) || !parts.every((part) => /^\d+\.?\d*$/.test(part))) return null;
+  // three digits are no minutes: "1 000" is a number with a thousands separator
+  const isPart = (part: string, k: number): boolean => (k === 0 ? /^\d+\.?\d*$/ : /^\d{1,2}(\.\d*)?$/).test(part);
+  if (!SHAPE.test(shape) || !parts.every(isPart)) return null;
   return {
     prefix: frame[1].toUpperCase(),
     sign: frame[2],
