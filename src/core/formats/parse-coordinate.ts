@@ -33,7 +33,7 @@ const matchSexagesimal = (text: string): Sexagesimal | null => {
   const parts = frame[3].match(/[\d.]+/g) ?? [];
   // three digits are no minutes: "1 000" is a number with a thousands separator
   const isPart = (part: string, k: number): boolean => (k === 0 ? /^\d+\.?\d*$/ : /^\d{1,2}(\.\d*)?$/).test(part);
-  if (!SHAPE.test(shape) || !parts.every(isPart)) return null;
+  if (!SHAPE.test(shape) || shape.trimEnd().endsWith(':') || !parts.every(isPart)) return null;
   return {
     prefix: frame[1].toUpperCase(),
     sign: frame[2],
