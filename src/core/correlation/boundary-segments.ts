@@ -7,8 +7,11 @@ export type BoundaryMesh = Pick<DesignedMesh, 'crs' | 'radiusKm' | 'coordinates'
 
 /** Boundary edges in groups of neighbours, so that far ones are passed over a group at a time. */
 export interface BoundarySegments {
-  /** Start and end of each edge, 6 per edge, km. The domain lies to the left. */
-  ends: Float64Array;
+  /**
+   * Vertices group after group, 3 coordinates in km each: group g's edges `groupStart[g]` .. have one vertex more than
+   * edges, so its first is vertex `groupStart[g] + g`. The domain lies to the left of the direction of travel.
+   */
+  positions: Float64Array;
   /** Signed curvature of each edge, 1/km. */
   curvature: Float64Array;
   /** First edge of each group, and the edge count at the end. */
@@ -23,26 +26,27 @@ export function boundarySegments(mesh: BoundaryMesh): BoundarySegments {
   const count = mesh.boundaryLoops.reduce((sum, loop) => sum + loop.length, 0);
   if (mesh.boundaryCurvature.length !== count)
     throw new NumericalError('INPUT_LENGTH_MISMATCH', `The boundary has ${count} edges but ${mesh.boundaryCurvature.length} curvatures. Give one per edge.`, { details: { edges: count, curvatures: mesh.boundaryCurvature.length } });
-  const position = nodePositions(mesh);
-  const ends = new Float64Array(6 * count);
+  const node = nodePositions(mesh);
   const starts: number[] = [];
+  const vertices: number[] = [];
   let e = 0;
   for (const loop of mesh.boundaryLoops)
-    for (let k = 0; k < loop.length; k++, e++) {
-      if (k % GROUP === 0) starts.push(e);
-      const a = 3 * loop[k];
-      const b = 3 * loop[(k + 1) % loop.length];
-      ends.set(position.subarray(a, a + 3), 6 * e);
-      ends.set(position.subarray(b, b + 3), 6 * e + 3);
+    for (let first = 0; first < loop.length; first += GROUP) {
+      const edges = Math.min(GROUP, loop.length - first);
+      starts.push(e);
+      for (let k = 0; k <= edges; k++) vertices.push(loop[(first + k) % loop.length]);
+      e += edges;
     }
+  const positions = new Float64Array(3 * vertices.length);
+  vertices.forEach((v, k) => positions.set(node.subarray(3 * v, 3 * v + 3), 3 * k));
   const groupStart = Uint32Array.from([...starts, count]);
-  return { ends, curvature: mesh.boundaryCurvature, groupStart, groupBall: groupBalls(ends, groupStart) };
+  return { positions, curvature: mesh.boundaryCurvature, groupStart, groupBall: groupBalls(positions, groupStart) };
 }
 
-function groupBalls(ends: Float64Array, groupStart: Uint32Array): Float64Array {
+function groupBalls(positions: Float64Array, groupStart: Uint32Array): Float64Array {
   const balls = new Float64Array(4 * (groupStart.length - 1));
   for (let g = 0; g + 1 < groupStart.length; g++) {
-    const points = ends.subarray(6 * groupStart[g], 6 * groupStart[g + 1]);
+    const points = positions.subarray(3 * (groupStart[g] + g), 3 * (groupStart[g + 1] + g + 1));
     const centre = [0, 1, 2].map((axis) => {
       let low = Infinity;
       let high = -Infinity;

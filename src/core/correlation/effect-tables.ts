@@ -15,6 +15,9 @@ export const TABLE_STEP = 0.02;
 /** Effects below this are left out of the prediction. */
 const NEGLIGIBLE = 1e-8;
 
+/** Boundary that is too far to add this share of the effect of the closest boundary is passed over. */
+const NEGLIGIBLE_SHARE = 1e-3;
+
 /** Curvature acts fully from this distance on (scales); nearer, the disc's excess diverges and says nothing local. */
 const CURVATURE_FROM = 1;
 
@@ -29,6 +32,8 @@ export interface EffectTables {
    * exact together with the second reflection h(2r).
    */
   gain: Float64Array;
+  /** For a closest boundary vertex at r: the distance beyond which boundary adds less than a thousandth of the effect. */
+  relativeReach: Float64Array;
 }
 
 /** h(r) for m steps, r in scales; 1/pi at r = 0. */
@@ -62,9 +67,21 @@ export function effectTables(m: number): EffectTables {
     const b = at(i + coarse);
     for (let j = 0; j < coarse && i + j < count; j++) gain[i + j] = a + ((b - a) * j) / coarse;
   }
-  const tables = { steps: m, reach, rayDensity: h, gain };
+  const tables = { steps: m, reach, rayDensity: h, gain, relativeReach: relativeReachOf(h) };
   cache.set(m, tables);
   return tables;
+}
+
+function relativeReachOf(h: Float64Array): Float64Array {
+  const out = new Float64Array(h.length);
+  let far = 0;
+  for (let i = 0; i < h.length; i++) {
+    // a side at distance r has an effect of about h(r) pi / (1 + r), everything beyond R at most 2 pi h(R)
+    const least = (NEGLIGIBLE_SHARE * h[i]) / (2 + 2 * i * TABLE_STEP);
+    while (far + 1 < h.length && h[far] > least) far++;
+    out[i] = far * TABLE_STEP;
+  }
+  return out;
 }
 
 /** Linear interpolation in a table of step TABLE_STEP; 0 beyond its end. */
