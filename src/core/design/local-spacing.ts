@@ -1,11 +1,10 @@
 import { NumericalError } from '#core/errors.ts';
 import type { CoordinateReference } from '#core/geometry/mesh.ts';
-import { greatCircleKm } from '#core/geometry/sphere.ts';
+import { greatCircleKm, writeLonLat, writeUnitVector } from '#core/geometry/sphere.ts';
 import { createStereographic } from '#core/geometry/stereographic.ts';
 
 import { clipVoronoi } from './clipped-voronoi.ts';
 import { createPointGrid } from './point-grid.ts';
-import { lonLatOfVector, writeUnitVector } from './unit-vector.ts';
 
 export interface LocalSpacing {
   /** Per point, km; see `localSpacing`. */
@@ -95,12 +94,12 @@ export const localSpacing = (
 /** Points that differ: `places` holds the first point of each place, `placeOf` the place of each point. */
 const findPlaces = ({ x, y }: Points): { placeOf: Uint32Array; places: number[] } => {
   const count = x.length;
-  const pairs = new Float64Array(2 * count);
+  const positions = new Float64Array(3 * count);
   for (let i = 0; i < count; i++) {
-    pairs[2 * i] = x[i] + 0;
-    pairs[2 * i + 1] = y[i] + 0;
+    positions[3 * i] = x[i] + 0;
+    positions[3 * i + 1] = y[i] + 0;
   }
-  const grid = createPointGrid(pairs, 2, 0);
+  const grid = createPointGrid(positions, 0, count, true);
   const placeOf = new Uint32Array(count);
   const places: number[] = [];
   for (let i = 0; i < count; i++) {
@@ -195,7 +194,11 @@ const chooseCentre = (lon: Float64Array, lat: Float64Array): [number, number] =>
   const length = Math.sqrt(mean[0] ** 2 + mean[1] ** 2 + mean[2] ** 2);
   if (length > 0) {
     const direction = mean.map((component) => component / length);
-    if (antipodeCosine(direction, vectors) < ANTIPODE_CLEARANCE) return lonLatOfVector(direction[0], direction[1], direction[2]);
+    if (antipodeCosine(direction, vectors) < ANTIPODE_CLEARANCE) {
+      const centre = new Float64Array(2);
+      writeLonLat(direction[0], direction[1], direction[2], centre, 0);
+      return [centre[0], centre[1]];
+    }
   }
   let best = SPARE_CENTRES[0];
   let least = Infinity;

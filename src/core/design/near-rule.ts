@@ -1,9 +1,10 @@
 import { NumericalError } from '#core/errors.ts';
 import { sin } from '#core/geometry/deterministic-math.ts';
 import type { CoordinateReference } from '#core/geometry/mesh.ts';
+import { writeLonLat, writeUnitVector } from '#core/geometry/sphere.ts';
 
 import { createPointGrid } from './point-grid.ts';
-import { lonLatOfVector, writeUnitVector } from './unit-vector.ts';
+import type { PointGrid } from './point-grid.ts';
 
 /** What the near-observation rule needs to know of the candidate rows; arrays have one entry per candidate. */
 export interface Candidates {
@@ -24,46 +25,83 @@ export interface Groups {
   y: Float64Array;
 }
 
+/** Below a micrometre only coincident positions are near. */
+const SMALLEST_KM = 1e-9;
+
+/** 3 coordinates per candidate and a reach in a space where plain distance decides. */
+interface SearchSpace {
+  points: Float64Array;
+  reach: number;
+  isFlat: boolean;
+  /** Moves candidate i to a position in the candidates' own coordinates. */
+  place(i: number, x: number, y: number): void;
+}
+
 /**
- * Points and reach in a space where plain distance decides: the plane in km, or unit vectors and the chord of the
- * great-circle distance. With km = 0 the coordinates themselves, a pole having longitude 0.
+ * The plane in km, or unit vectors and the chord of the great-circle distance. For coincidence the coordinates
+ * themselves, a pole having longitude 0.
  */
-const createSearchSpace = (candidates: Candidates, km: number): { points: Float64Array; dimensions: 2 | 3; reach: number } => {
-  const { crs, sphereRadiusKm, x, y } = candidates;
-  const count = x.length;
-  if (crs === 'plane-km' || km === 0) {
-    const points = new Float64Array(2 * count);
-    for (let i = 0; i < count; i++) {
-      const isPole = crs === 'lonlat-deg' && (y[i] === 90 || y[i] === -90);
-      // adding 0 turns -0 into 0, so that equal coordinates have equal bits
-      points[2 * i] = isPole ? 0 : x[i] + 0;
-      points[2 * i + 1] = y[i] + 0;
+const createSearchSpace = ({ crs, sphereRadiusKm, x, y }: Candidates, km: number): SearchSpace => {
+  const points = new Float64Array(3 * x.length);
+  const isCoincidence = km < SMALLEST_KM;
+  const isFlat = crs === 'plane-km' || isCoincidence;
+  const place = (i: number, px: number, py: number): void => {
+    if (!isFlat) {
+      writeUnitVector(px, py, points, 3 * i);
+      return;
     }
-    return { points, dimensions: 2, reach: km };
-  }
-  const points = new Float64Array(3 * count);
-  for (let i = 0; i < count; i++) writeUnitVector(x[i], y[i], points, 3 * i);
+    const isPole = crs === 'lonlat-deg' && (py === 90 || py === -90);
+    // adding 0 turns -0 into 0, so that equal coordinates have equal bits
+    points[3 * i] = isPole ? 0 : px + 0;
+    points[3 * i + 1] = py + 0;
+  };
+  for (let i = 0; i < x.length; i++) place(i, x[i], y[i]);
   const angle = km / sphereRadiusKm;
   // no chord exceeds 2
-  return { points, dimensions: 3, reach: angle >= Math.PI ? 3 : 2 * sin(angle / 2) };
+  const chord = angle >= Math.PI ? 3 : 2 * sin(angle / 2);
+  return { points, reach: isCoincidence ? 0 : isFlat ? km : chord, isFlat, place };
 };
 
 /** Indices from the smallest error standard deviation to the largest (those without one last), then by index. */
-const orderByPrecision = (errorSd: Float64Array | undefined, count: number): Uint32Array => {
-  const order = Uint32Array.from({ length: count }, (_, i) => i);
-  if (!errorSd) return order;
-  const sd = errorSd.map((s) => (Number.isNaN(s) ? Infinity : s));
-  return order.sort((a, b) => (sd[a] === sd[b] ? a - b : sd[a] - sd[b]));
+const orderByPrecision = (errorSd: Float64Array | undefined, indices: Uint32Array): Uint32Array => {
+  if (!errorSd) return indices.slice().sort();
+  const sd = new Float64Array(indices.length);
+  for (let k = 0; k < sd.length; k++) sd[k] = Number.isNaN(errorSd[indices[k]]) ? Infinity : errorSd[indices[k]];
+  const order = sortedOrder(sd, indices);
+  for (let k = 0; k < order.length; k++) order[k] = indices[order[k]];
+  return order;
 };
 
+/** Positions in `keys` (not negative) from the least to the greatest, equal ones by `ties`. */
+const sortedOrder = (keys: Float64Array, ties: Uint32Array): Uint32Array => {
+  // the bits of doubles that are not negative sort like the doubles: radix sort, least significant digit first
+  const words = new Uint32Array(keys.buffer, keys.byteOffset, 2 * keys.length);
+  const low = isLittleEndian ? 0 : 1;
+  let from: Uint32Array = allIndices(keys.length);
+  let to: Uint32Array = new Uint32Array(keys.length);
+  const start = new Uint32Array(0x10001);
+  const sortBy = (source: Uint32Array, stride: number, offset: number, shift: number): void => {
+    start.fill(0);
+    for (let k = 0; k < from.length; k++) start[((source[stride * k + offset] >>> shift) & 0xffff) + 1]++;
+    for (let d = 0; d < 0x10000; d++) start[d + 1] += start[d];
+    for (let k = 0; k < from.length; k++) to[start[(source[stride * from[k] + offset] >>> shift) & 0xffff]++] = from[k];
+    [from, to] = [to, from];
+  };
+  for (const shift of [0, 16]) sortBy(ties, 1, 0, shift);
+  for (const offset of [low, 1 - low]) for (const shift of [0, 16]) sortBy(words, 2, offset, shift);
+  return from;
+};
+
+const isLittleEndian = new Uint8Array(new Uint16Array([1]).buffer)[0] === 1;
+
 /**
- * Greedy centres: in the order of precision a candidate is a centre when no centre lies closer than km.
- * `centreOf[i]` is i itself for a centre, else its nearest centre (of equally near ones the lowest index).
+ * Greedy centres: in the given order a candidate is a centre when no centre lies closer than the reach. Returns for
+ * each candidate of the order itself if it is a centre, else its nearest centre (of equally near ones the lowest
+ * index); -1 for the rest.
  */
-const findCentres = (candidates: Candidates, km: number, order: Uint32Array): { centreOf: Int32Array; centres: number } => {
-  const { points, dimensions, reach } = createSearchSpace(candidates, km);
-  const grid = createPointGrid(points, dimensions, reach);
-  const centreOf = new Int32Array(order.length).fill(-1);
+const findCentres = ({ points, reach, isFlat }: SearchSpace, order: Uint32Array): Int32Array => {
+  const grid = createPointGrid(points, reach, order.length, isFlat);
+  const centreOf = new Int32Array(points.length / 3).fill(-1);
   let centres = 0;
   for (const i of order) {
     if (grid.hasNear(i)) continue;
@@ -71,8 +109,15 @@ const findCentres = (candidates: Candidates, km: number, order: Uint32Array): { 
     centreOf[i] = i;
     centres++;
   }
-  if (centres < order.length) for (const i of order) if (centreOf[i] < 0) centreOf[i] = grid.nearest(i);
-  return { centreOf, centres };
+  if (centres === order.length) return centreOf;
+  for (const i of order) if (centreOf[i] < 0) centreOf[i] = grid.nearest(i);
+  return centreOf;
+};
+
+const allIndices = (count: number): Uint32Array => {
+  const indices = new Uint32Array(count);
+  for (let i = 0; i < count; i++) indices[i] = i;
+  return indices;
 };
 
 /**
@@ -81,8 +126,11 @@ const findCentres = (candidates: Candidates, km: number, order: Uint32Array): { 
  * and every dropped one has a kept one, no less precise, closer than km.
  */
 export const thinNear = (candidates: Candidates, km: number): Uint8Array => {
-  const { centreOf } = findCentres(candidates, km, orderByPrecision(candidates.errorSd, candidates.x.length));
-  return Uint8Array.from(centreOf, (centre, i) => (centre === i ? 1 : 0));
+  const order = orderByPrecision(candidates.errorSd, allIndices(candidates.x.length));
+  const centreOf = findCentres(createSearchSpace(candidates, km), order);
+  const kept = new Uint8Array(centreOf.length);
+  for (let i = 0; i < kept.length; i++) kept[i] = centreOf[i] === i ? 1 : 0;
+  return kept;
 };
 
 /**
@@ -93,52 +141,87 @@ export const thinNear = (candidates: Candidates, km: number): Uint8Array => {
  */
 export const combineNear = (candidates: Candidates, km: number): Groups => {
   const count = candidates.x.length;
-  let groups = singletons(candidates);
-  for (;;) {
-    const errorSd = candidates.errorSd && groupErrorSd(groups, candidates.errorSd);
-    const now: Candidates = { ...candidates, x: groups.x, y: groups.y, errorSd };
-    const { centreOf, centres } = findCentres(now, km, orderByPrecision(errorSd, groups.x.length));
-    if (centres === groups.x.length) return groups;
-    groups = mergeGroups(candidates, groups, centreOf, count);
+  const space = createSearchSpace(candidates, km);
+  // a group goes by its first member, at whose place its position and standard deviation are kept
+  const x = candidates.x.slice();
+  const y = candidates.y.slice();
+  const errorSd = candidates.errorSd?.slice();
+  const groupOf = allIndices(count);
+  const membersOf = new Map<number, Uint32Array>();
+
+  /** Makes one group of some; returns its number. */
+  const merge = (groups: number[]): number => {
+    const members = Uint32Array.from(groups.flatMap((group) => [...(membersOf.get(group) ?? [group])])).sort();
+    for (const group of groups) membersOf.delete(group);
+    const [first] = members;
+    for (const i of members) groupOf[i] = first;
+    membersOf.set(first, members);
+    const [px, py] = meanPosition(candidates, members);
+    x[first] = px;
+    y[first] = py;
+    space.place(first, px, py);
+    if (errorSd && candidates.errorSd) errorSd[first] = combinedErrorSd(members, candidates.errorSd);
+    return first;
+  };
+
+  let grid: PointGrid | null = null;
+  let round: Uint32Array = groupOf.slice();
+  while (round.length > 0) {
+    const merges = mergesOf(findCentres(space, orderByPrecision(errorSd, round)), round);
+    for (const groups of merges) for (const group of groups) grid?.remove(group);
+    const merged = merges.map(merge);
+    const standing: PointGrid = grid ?? createPointGrid(space.points, space.reach, count, space.isFlat);
+    if (grid) for (const group of merged) grid.insert(group);
+    else for (let i = 0; i < count; i++) if (groupOf[i] === i) standing.insert(i);
+    grid = standing;
+
+    // groups that did not move are at least km apart: the next round is about the moved ones and their neighbours
+    const next = new Set<number>();
+    for (const group of merged) {
+      const near = standing.listNear(group);
+      if (near.length > 0) next.add(group);
+      for (const other of near) next.add(other);
+    }
+    round = Uint32Array.from(next);
   }
+  return collectGroups(groupOf, x, y);
 };
 
-const singletons = ({ x, y }: Candidates): Groups => ({
-  start: Uint32Array.from({ length: x.length + 1 }, (_, i) => i),
-  members: Uint32Array.from({ length: x.length }, (_, i) => i),
-  x,
-  y,
-});
+/** Lists of groups that become one, the centre first. */
+const mergesOf = (centreOf: Int32Array, round: Uint32Array): number[][] => {
+  const lists = new Map<number, number[]>();
+  for (const i of round) {
+    const centre = centreOf[i];
+    if (centre === i) continue;
+    const list = lists.get(centre);
+    if (list) list.push(i);
+    else lists.set(centre, [centre, i]);
+  }
+  return [...lists.values()];
+};
 
-const mergeGroups = (candidates: Candidates, groups: Groups, centreOf: Int32Array, count: number): Groups => {
-  const centreOfMember = new Int32Array(count);
-  for (let g = 0; g < centreOf.length; g++)
-    for (let k = groups.start[g]; k < groups.start[g + 1]; k++) centreOfMember[groups.members[k]] = centreOf[g];
-
-  // number the groups by their first member
-  const numberOf = new Int32Array(centreOf.length).fill(-1);
-  const size = new Uint32Array(centreOf.length + 1);
-  let merged = 0;
+const collectGroups = (groupOf: Uint32Array, x: Float64Array, y: Float64Array): Groups => {
+  const count = groupOf.length;
+  const numberOf = new Uint32Array(count);
+  const sizes = new Uint32Array(count + 1);
+  let groups = 0;
+  // a group's first member comes before its others
   for (let i = 0; i < count; i++) {
-    const centre = centreOfMember[i];
-    if (numberOf[centre] < 0) numberOf[centre] = merged++;
-    size[numberOf[centre] + 1]++;
+    if (groupOf[i] === i) numberOf[i] = groups++;
+    sizes[numberOf[groupOf[i]] + 1]++;
   }
-  const start = size.slice(0, merged + 1);
-  for (let g = 0; g < merged; g++) start[g + 1] += start[g];
-  const members = new Uint32Array(count);
+  const start = sizes.slice(0, groups + 1);
+  for (let g = 0; g < groups; g++) start[g + 1] += start[g];
   const fill = start.slice();
-  for (let i = 0; i < count; i++) members[fill[numberOf[centreOfMember[i]]]++] = i;
-
-  const x = new Float64Array(merged);
-  const y = new Float64Array(merged);
-  const mean = new Float64Array(2);
-  for (let g = 0; g < merged; g++) {
-    meanPosition(candidates, members.subarray(start[g], start[g + 1]), mean);
-    x[g] = mean[0];
-    y[g] = mean[1];
+  const members = new Uint32Array(count);
+  for (let i = 0; i < count; i++) members[fill[numberOf[groupOf[i]]]++] = i;
+  const gx = new Float64Array(groups);
+  const gy = new Float64Array(groups);
+  for (let g = 0; g < groups; g++) {
+    gx[g] = x[members[start[g]]];
+    gy[g] = y[members[start[g]]];
   }
-  return { start, members, x, y };
+  return { start, members, x: gx, y: gy };
 };
 
 /**
@@ -153,40 +236,36 @@ export const memberWeights = (members: Uint32Array, errorSd: Float64Array | unde
     if (Number.isNaN(errorSd[i])) return weights;
     smallest = Math.min(smallest, errorSd[i]);
   }
-  for (const [k, i] of members.entries()) weights[k] = (smallest / errorSd[i]) ** 2;
+  for (const [k, i] of members.entries()) {
+    const ratio = smallest / errorSd[i];
+    weights[k] = ratio * ratio;
+  }
   return weights;
 };
 
-/** Standard deviation 1/sqrt(sum of 1/sd²) of each group's inverse-variance mean; NaN where a member has none. */
-export const groupErrorSd = ({ start, members }: Pick<Groups, 'start' | 'members'>, errorSd: Float64Array): Float64Array => {
-  const out = new Float64Array(start.length - 1);
-  for (let g = 0; g < out.length; g++) {
-    let smallest = Infinity;
-    for (let k = start[g]; k < start[g + 1]; k++) smallest = minOrNaN(smallest, errorSd[members[k]]);
-    let sum = 0;
-    for (let k = start[g]; k < start[g + 1]; k++) {
-      const ratio = smallest / errorSd[members[k]];
-      sum += ratio * ratio;
-    }
-    out[g] = smallest / Math.sqrt(sum);
+/** Standard deviation 1/sqrt(sum of 1/sd²) of the members' inverse-variance mean; NaN where a member has none. */
+export const combinedErrorSd = (members: Uint32Array, errorSd: Float64Array): number => {
+  let smallest = Infinity;
+  for (const i of members) {
+    if (Number.isNaN(errorSd[i])) return NaN;
+    smallest = Math.min(smallest, errorSd[i]);
   }
-  return out;
+  let sum = 0;
+  for (const i of members) {
+    const ratio = smallest / errorSd[i];
+    sum += ratio * ratio;
+  }
+  return smallest / Math.sqrt(sum);
 };
 
-const minOrNaN = (a: number, b: number): number => (Number.isNaN(a) || Number.isNaN(b) ? NaN : Math.min(a, b));
-
-const meanPosition = (candidates: Candidates, members: Uint32Array, out: Float64Array): void => {
+/** Weighted mean position: in the plane of the coordinates, on the sphere the direction of the mean unit vector. */
+const meanPosition = (candidates: Candidates, members: Uint32Array): [number, number] => {
   const { crs, x, y, errorSd } = candidates;
   const weights = memberWeights(members, errorSd);
   const lead = members[weights.indexOf(1)];
-  out[0] = x[lead];
-  out[1] = y[lead];
   const isPole = crs === 'lonlat-deg' && Math.abs(y[lead]) === 90;
-  if (members.every((i) => y[i] === y[lead] && (isPole || x[i] === x[lead]))) return;
-  if (crs === 'lonlat-deg') {
-    meanOnSphere(candidates, members, weights, out);
-    return;
-  }
+  if (members.every((i) => y[i] === y[lead] && (isPole || x[i] === x[lead]))) return [x[lead], y[lead]];
+  if (crs === 'lonlat-deg') return meanOnSphere(candidates, members, weights) ?? [x[lead], y[lead]];
   let dx = 0;
   let dy = 0;
   let sum = 0;
@@ -195,15 +274,14 @@ const meanPosition = (candidates: Candidates, members: Uint32Array, out: Float64
     dy += weights[k] * (y[i] - y[lead]);
     sum += weights[k];
   }
-  out[0] += dx / sum;
-  out[1] += dy / sum;
+  return [x[lead] + dx / sum, y[lead] + dy / sum];
 };
 
 /** Below this length a mean of unit vectors has no direction worth the name: its points are spread round the sphere. */
 const SHORTEST_MEAN_VECTOR = 1e-6;
 
-/** Direction of the weighted mean of the unit vectors; leaves `out` alone where there is none. */
-const meanOnSphere = ({ x, y }: Candidates, members: Uint32Array, weights: Float64Array, out: Float64Array): void => {
+/** Direction of the weighted mean of the unit vectors; null where there is none. */
+const meanOnSphere = ({ x, y }: Candidates, members: Uint32Array, weights: Float64Array): [number, number] | null => {
   const v = new Float64Array(3);
   let sx = 0;
   let sy = 0;
@@ -216,8 +294,9 @@ const meanOnSphere = ({ x, y }: Candidates, members: Uint32Array, weights: Float
     sz += weights[k] * v[2];
     sum += weights[k];
   }
-  if (Math.sqrt(sx * sx + sy * sy + sz * sz) < SHORTEST_MEAN_VECTOR * sum) return;
-  out.set(lonLatOfVector(sx, sy, sz));
+  if (Math.sqrt(sx * sx + sy * sy + sz * sz) < SHORTEST_MEAN_VECTOR * sum) return null;
+  writeLonLat(sx, sy, sz, v, 0);
+  return [v[0], v[1]];
 };
 
 const MOST_PAIRS_NAMED = 20;
@@ -226,14 +305,14 @@ const MOST_PAIRS_NAMED = 20;
  * Throws when a candidate lies closer than km to another one.
  * @throws NumericalError POINTS_TOO_CLOSE with up to 20 pairs of lines; `details.count` candidates have a nearer one.
  */
-export const refuseNear = (candidates: Candidates, km: number, lines: Uint32Array): void => {
-  const order = Uint32Array.from({ length: candidates.x.length }, (_, i) => i);
-  const { centreOf, centres } = findCentres(candidates, km, order);
-  const count = order.length - centres;
+export const refuseNear = (candidates: Candidates, km: number, lineOf: (i: number) => number): void => {
+  const order = allIndices(candidates.x.length);
+  const centreOf = findCentres(createSearchSpace(candidates, km), order);
+  const count = centreOf.reduce((sum, centre, i) => sum + (centre === i ? 0 : 1), 0);
   if (count === 0) return;
   const pairs: [number, number][] = [];
   for (let i = 0; i < order.length && pairs.length < MOST_PAIRS_NAMED; i++)
-    if (centreOf[i] !== i) pairs.push([lines[centreOf[i]], lines[i]]);
+    if (centreOf[i] !== i) pairs.push([lineOf(centreOf[i]), lineOf(i)]);
   const named = pairs.slice(0, 5).map(([a, b]) => `${a} and ${b}`);
   const rest = count > named.length ? `, and ${count - named.length} more` : '';
   const what = km > 0 ? `closer than ${km} km to another one` : 'at the same place as another one';

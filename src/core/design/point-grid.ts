@@ -1,90 +1,122 @@
-/** Points of `dimensions` coordinates each, looked up by distance: a hash grid whose cells are one reach wide. */
+/** Points looked up by distance: a hash grid whose cells are two reaches wide, so that a look-up meets few of them. */
 export interface PointGrid {
   insert(i: number): void;
+  /** Takes an inserted point out, at the position that it was inserted with. */
+  remove(i: number): void;
   /** Whether an inserted point lies closer to point i than the reach (or, with reach 0, coincides with it). */
   hasNear(i: number): boolean;
   /** The nearest inserted point that `hasNear` means, of equally near ones the lowest index; -1 without one. */
   nearest(i: number): number;
+  /** Every inserted point that `hasNear` means, point i itself left out, in no particular order. */
+  listNear(i: number): number[];
 }
 
 /**
- * An empty grid over `points`. Uses only exactly rounded arithmetic, so every machine finds the same neighbours.
- * Where inserted points keep one reach apart, a look-up costs a bounded number of comparisons.
+ * An empty grid over points of 3 coordinates each, for about `capacity` of them; `isFlat` where z is 0 throughout. Uses
+ * exactly rounded arithmetic only, so every machine finds the same neighbours. Where inserted points keep one reach
+ * apart, a look-up costs a bounded number of comparisons.
  */
-export const createPointGrid = (points: Float64Array, dimensions: 2 | 3, reach: number): PointGrid => {
-  const count = points.length / dimensions;
-  const bits = Math.max(4, Math.ceil(Math.log2(count + 1)) + 1);
-  const mask = 2 ** bits - 1;
+export const createPointGrid = (points: Float64Array, reach: number, capacity: number, isFlat: boolean): PointGrid => {
+  const mask = 2 ** Math.max(4, Math.ceil(Math.log2(capacity + 1)) + 1) - 1;
   const head = new Int32Array(mask + 1).fill(-1);
-  const next = new Int32Array(count);
+  const next = new Int32Array(points.length / 3);
   const reach2 = reach * reach;
+  const width = 2 * reach;
   const words = new Uint32Array(6);
   const floats = new Float64Array(words.buffer);
-  const around = reach > 0 ? 1 : 0;
 
   const bucket = (a: number, b: number, c: number): number => {
     let hash = Math.imul(a, 0x9e3779b1) ^ Math.imul(b, 0x85ebca6b) ^ Math.imul(c, 0xc2b2ae35);
     hash = Math.imul(hash ^ (hash >>> 15), 0x2c1b3c6d);
     return (hash ^ (hash >>> 13)) & mask;
   };
-  const coincidenceBucket = (i: number): number => {
-    for (let k = 0; k < dimensions; k++) floats[k] = points[i * dimensions + k];
-    return bucket(words[0] ^ Math.imul(words[1], 31), words[2] ^ Math.imul(words[3], 31), words[4] ^ words[5]);
-  };
-  const cell = (i: number, k: number): number => Math.floor(points[i * dimensions + k] / reach);
-
-  const distance2 = (i: number, j: number): number => {
-    let sum = 0;
-    for (let k = 0; k < dimensions; k++) {
-      const d = points[i * dimensions + k] - points[j * dimensions + k];
-      sum += d * d;
-    }
-    return sum;
+  const home = (i: number): number => {
+    if (reach > 0)
+      return bucket(Math.floor(points[3 * i] / width), Math.floor(points[3 * i + 1] / width), Math.floor(points[3 * i + 2] / width));
+    for (let k = 0; k < 3; k++) floats[k] = points[3 * i + k];
+    return bucket(words[0] ^ Math.imul(words[1], 31), words[2] ^ Math.imul(words[3], 31), words[4] ^ Math.imul(words[5], 31));
   };
   // squares of tiny differences underflow to 0: coincidence compares the coordinates themselves
-  const coincides = (i: number, j: number): boolean => {
-    for (let k = 0; k < dimensions; k++) if (points[i * dimensions + k] !== points[j * dimensions + k]) return false;
-    return true;
+  const coincides = (i: number, j: number): boolean =>
+    points[3 * i] === points[3 * j] && points[3 * i + 1] === points[3 * j + 1] && points[3 * i + 2] === points[3 * j + 2];
+
+  /** Squared distance of an inserted point near to i, or Infinity. */
+  const nearness = (i: number, j: number): number => {
+    if (reach === 0) return coincides(i, j) ? 0 : Infinity;
+    const dx = points[3 * i] - points[3 * j];
+    const dy = points[3 * i + 1] - points[3 * j + 1];
+    const dz = points[3 * i + 2] - points[3 * j + 2];
+    const distance2 = dx * dx + dy * dy + dz * dz;
+    return distance2 < reach2 ? distance2 : Infinity;
   };
 
-  const search = (i: number, stopAtFirst: boolean): number => {
-    let best = -1;
-    let bestDistance2 = Infinity;
-    const visit = (start: number): void => {
-      for (let j = head[start]; j >= 0; j = next[j]) {
-        const d = distance2(i, j);
-        if (reach > 0 ? d >= reach2 : !coincides(i, j)) continue;
-        if (d > bestDistance2 || (d === bestDistance2 && j > best)) continue;
-        best = j;
-        bestDistance2 = d;
-        if (stopAtFirst) return;
-      }
-    };
-    if (reach === 0) {
-      visit(coincidenceBucket(i));
-      return best;
-    }
-    const a = cell(i, 0);
-    const b = cell(i, 1);
-    const c = dimensions === 3 ? cell(i, 2) : 0;
-    const deep = dimensions === 3 ? 1 : 0;
-    for (let dc = -deep; dc <= deep; dc++)
-      for (let db = -around; db <= around; db++)
-        for (let da = -around; da <= around; da++) {
-          visit(bucket(a + da, b + db, c + dc));
-          if (stopAtFirst && best >= 0) return best;
+  // the buckets of the cells within reach, each once: two cells a side, one more each way where rounding has its say
+  const buckets = new Int32Array(64);
+  const findBuckets = (i: number): number => {
+    buckets[0] = home(i);
+    if (reach === 0) return 1;
+    let count = 1;
+    const west = Math.floor((points[3 * i] - reach) / width);
+    const south = Math.floor((points[3 * i + 1] - reach) / width);
+    const bottom = Math.floor((points[3 * i + 2] - reach) / width);
+    const columns = Math.min(3, Math.floor((points[3 * i] + reach) / width) - west);
+    const rows = Math.min(3, Math.floor((points[3 * i + 1] + reach) / width) - south);
+    const layers = isFlat ? 0 : Math.min(3, Math.floor((points[3 * i + 2] + reach) / width) - bottom);
+    for (let c = 0; c <= layers; c++)
+      for (let b = 0; b <= rows; b++)
+        for (let a = 0; a <= columns; a++) {
+          const at = bucket(west + a, south + b, isFlat ? 0 : bottom + c);
+          if (head[at] < 0) continue;
+          let isKnown = false;
+          for (let k = 0; k < count; k++) if (buckets[k] === at) isKnown = true;
+          if (!isKnown) buckets[count++] = at;
         }
-    return best;
+    return count;
   };
 
   return {
     insert(i) {
-      const at =
-        reach === 0 ? coincidenceBucket(i) : bucket(cell(i, 0), cell(i, 1), dimensions === 3 ? cell(i, 2) : 0);
+      const at = home(i);
       next[i] = head[at];
       head[at] = i;
     },
-    hasNear: (i) => search(i, true) >= 0,
-    nearest: (i) => search(i, false),
+    remove(i) {
+      const at = home(i);
+      if (head[at] === i) {
+        head[at] = next[i];
+        return;
+      }
+      let before = head[at];
+      while (next[before] !== i) before = next[before];
+      next[before] = next[i];
+    },
+    hasNear(i) {
+      const own = head[home(i)];
+      for (let j = own; j >= 0; j = next[j]) if (nearness(i, j) < Infinity) return true;
+      const count = findBuckets(i);
+      for (let k = 1; k < count; k++)
+        for (let j = head[buckets[k]]; j >= 0; j = next[j]) if (nearness(i, j) < Infinity) return true;
+      return false;
+    },
+    nearest(i) {
+      let best = -1;
+      let least = Infinity;
+      const count = findBuckets(i);
+      for (let k = 0; k < count; k++)
+        for (let j = head[buckets[k]]; j >= 0; j = next[j]) {
+          const distance2 = nearness(i, j);
+          if (distance2 > least || distance2 === Infinity || (distance2 === least && j > best)) continue;
+          best = j;
+          least = distance2;
+        }
+      return best;
+    },
+    listNear(i) {
+      const near: number[] = [];
+      const count = findBuckets(i);
+      for (let k = 0; k < count; k++)
+        for (let j = head[buckets[k]]; j >= 0; j = next[j]) if (j !== i && nearness(i, j) < Infinity) near.push(j);
+      return near;
+    },
   };
 };

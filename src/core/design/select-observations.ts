@@ -1,6 +1,6 @@
 import { NumericalError } from '#core/errors.ts';
 
-import { combineNear, groupErrorSd, memberWeights, refuseNear, thinNear } from './near-rule.ts';
+import { combinedErrorSd, combineNear, memberWeights, refuseNear, thinNear } from './near-rule.ts';
 import type { Candidates } from './near-rule.ts';
 import type { LabelColumn, ObservationColumns } from './observations.ts';
 import { observationCount } from './observations.ts';
@@ -28,22 +28,28 @@ export const selectObservations = (
   const candidateRows = keptRows(exclusion);
   if (candidateRows.length === 0) throw emptySelection(columns, exclusion);
 
-  const pick = (column: Float64Array): Float64Array => Float64Array.from(candidateRows, (row) => column[row]);
   const candidates: Candidates = {
     crs: columns.crs,
     sphereRadiusKm,
-    x: pick(columns.x),
-    y: pick(columns.y),
-    errorSd: columns.errorSd && pick(columns.errorSd),
+    x: gather(columns.x, candidateRows),
+    y: gather(columns.y, candidateRows),
+    errorSd: columns.errorSd && gather(columns.errorSd, candidateRows),
   };
   const { km, rule } = selection.near;
   if (rule === 'combine') return combineRows(columns, exclusion, candidateRows, candidates, km);
-  if (rule === 'refuse') refuseNear(candidates, km, Uint32Array.from(candidateRows, (row) => columns.line[row]));
+  if (rule === 'refuse') refuseNear(candidates, km, (i) => columns.line[candidateRows[i]]);
   if (rule === 'thin') {
     const kept = thinNear(candidates, km);
-    for (const [i, row] of candidateRows.entries()) if (!kept[i]) exclusion[row] = EXCLUSION.thinned;
+    for (let i = 0; i < kept.length; i++) if (!kept[i]) exclusion[candidateRows[i]] = EXCLUSION.thinned;
   }
   return pickRows(columns, exclusion, keptRows(exclusion));
+};
+
+/** The column's values at some rows. */
+const gather = (column: Float64Array, rows: Uint32Array): Float64Array => {
+  const out = new Float64Array(rows.length);
+  for (let i = 0; i < rows.length; i++) out[i] = column[rows[i]];
+  return out;
 };
 
 const checkSelection = ({ near, timeWindow, level }: Selection, sphereRadiusKm: number): void => {
@@ -75,7 +81,9 @@ const excludeRows = (columns: ObservationColumns, selection: Selection): Uint8Ar
     if (isInLeftOut && isInLeftOut(x[row], y[row])) return EXCLUSION.insidePolygon;
     return EXCLUSION.none;
   };
-  return Uint8Array.from({ length: observationCount(columns) }, (_, row) => reasonFor(row));
+  const exclusion = new Uint8Array(observationCount(columns));
+  for (let row = 0; row < exclusion.length; row++) exclusion[row] = reasonFor(row);
+  return exclusion;
 };
 
 const createFlagTest = (flag: LabelColumn | undefined, kept: string[] | undefined): ((row: number) => boolean) => {
@@ -94,15 +102,16 @@ const keptRows = (exclusion: Uint8Array): Uint32Array => {
 };
 
 const pickRows = (columns: ObservationColumns, exclusion: Uint8Array, rows: Uint32Array): SelectedObservations => {
-  const pick = (column: Float64Array): Float64Array => Float64Array.from(rows, (row) => column[row]);
+  const rowStart = new Uint32Array(rows.length + 1);
+  for (let i = 0; i <= rows.length; i++) rowStart[i] = i;
   return {
     crs: columns.crs,
-    x: pick(columns.x),
-    y: pick(columns.y),
-    ...(columns.value && { value: pick(columns.value) }),
-    ...(columns.value2 && { value2: pick(columns.value2) }),
-    ...(columns.errorSd && { errorSd: pick(columns.errorSd) }),
-    rowStart: Uint32Array.from({ length: rows.length + 1 }, (_, i) => i),
+    x: gather(columns.x, rows),
+    y: gather(columns.y, rows),
+    ...(columns.value && { value: gather(columns.value, rows) }),
+    ...(columns.value2 && { value2: gather(columns.value2, rows) }),
+    ...(columns.errorSd && { errorSd: gather(columns.errorSd, rows) }),
+    rowStart,
     rows,
     exclusion,
   };
@@ -118,40 +127,44 @@ const combineRows = (
   const { start, members, x, y } = combineNear(candidates, km);
   if (x.length === candidateRows.length) return pickRows(columns, exclusion, candidateRows);
 
-  /** Weighted mean over the rows that give the value; NaN where none does. */
-  const combine = (column: Float64Array): Float64Array => {
-    const out = new Float64Array(x.length);
-    for (let g = 0; g < out.length; g++) {
-      const group = members.subarray(start[g], start[g + 1]);
-      if (group.length === 1) {
-        out[g] = column[candidateRows[group[0]]];
-        continue;
-      }
-      const weights = memberWeights(group, candidates.errorSd);
-      let sum = 0;
-      let total = 0;
-      for (const [k, i] of group.entries()) {
-        const value = column[candidateRows[i]];
-        if (Number.isNaN(value)) continue;
-        sum += weights[k] * value;
-        total += weights[k];
-      }
-      out[g] = total > 0 ? sum / total : NaN;
-    }
-    return out;
-  };
-  return {
-    crs: columns.crs,
-    x,
-    y,
-    ...(columns.value && { value: combine(columns.value) }),
-    ...(columns.value2 && { value2: combine(columns.value2) }),
-    ...(candidates.errorSd && { errorSd: groupErrorSd({ start, members }, candidates.errorSd) }),
-    rowStart: start,
-    rows: Uint32Array.from(members, (i) => candidateRows[i]),
-    exclusion,
-  };
+  const rows = new Uint32Array(members.length);
+  for (let k = 0; k < rows.length; k++) rows[k] = candidateRows[members[k]];
+  const out: SelectedObservations = { crs: columns.crs, x, y, rowStart: start, rows, exclusion };
+  const { value, value2, errorSd } = columns;
+  if (value) out.value = combineColumn(value, out, errorSd);
+  if (value2) out.value2 = combineColumn(value2, out, errorSd);
+  if (errorSd) out.errorSd = mapGroups(errorSd, out, (rows) => combinedErrorSd(rows, errorSd));
+  return out;
 };
+
+/** The column at single rows, and what `combine` makes of a group's rows elsewhere. */
+const mapGroups = (
+  column: Float64Array,
+  { rowStart, rows }: SelectedObservations,
+  combine: (rows: Uint32Array) => number,
+): Float64Array => {
+  const out = new Float64Array(rowStart.length - 1);
+  for (let g = 0; g < out.length; g++) {
+    const start = rowStart[g];
+    const end = rowStart[g + 1];
+    out[g] = end - start === 1 ? column[rows[start]] : combine(rows.subarray(start, end));
+  }
+  return out;
+};
+
+/** Weighted mean of a column over the rows that give it; NaN where none does. */
+const combineColumn = (column: Float64Array, selected: SelectedObservations, errorSd: Float64Array | undefined): Float64Array =>
+  mapGroups(column, selected, (rows) => {
+    const weights = memberWeights(rows, errorSd);
+    let sum = 0;
+    let total = 0;
+    for (const [k, row] of rows.entries()) {
+      if (Number.isNaN(column[row])) continue;
+      sum += weights[k] * column[row];
+      total += weights[k];
+    }
+    return total > 0 ? sum / total : NaN;
+  });
 
 const REASON_WORDS: [number, string, string][] = [
   [EXCLUSION.flag, 'flag', 'by their quality flag'],
