@@ -23,6 +23,8 @@ export interface Migration {
 
 /** Schema of the job queue, beside our own tables. */
 export const QUEUE_SCHEMA = 'pgboss';
+/** The one queue; what a message means is told by its job's row. */
+export const QUEUE = 'jobs';
 
 /** One number for all processes that migrate the same database. */
 const MIGRATION_LOCK = 7_305_172_849;
@@ -161,6 +163,7 @@ async function installQueue(url: string, sequelize: Sequelize): Promise<void> {
   const problems: unknown[] = [];
   boss.on('error', (error) => problems.push(error));
   await boss.start();
+  await boss.createQueue(QUEUE);
   await boss.stop({ graceful: false, wait: true });
   if (problems.length > 0) throw new Error('The job queue could not be installed in the database.', { cause: problems[0] });
   await sequelize.query(

@@ -12,20 +12,20 @@ export const accounts: Migration = {
         name text NOT NULL,
         password_hash text NOT NULL,
         must_change_password boolean NOT NULL DEFAULT false,
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         updated_at timestamptz NOT NULL DEFAULT now()
       );
       CREATE TABLE teams (
         id uuid PRIMARY KEY DEFAULT gen_random_uuid(),
         name text NOT NULL,
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         updated_at timestamptz NOT NULL DEFAULT now()
       );
       CREATE TABLE memberships (
         team_id uuid NOT NULL REFERENCES teams ON DELETE CASCADE,
         user_id uuid NOT NULL REFERENCES users ON DELETE CASCADE,
         role text NOT NULL CHECK (role IN ('viewer', 'designer', 'reviewer', 'admin')),
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         updated_at timestamptz NOT NULL DEFAULT now(),
         PRIMARY KEY (team_id, user_id)
       );
@@ -33,7 +33,7 @@ export const accounts: Migration = {
       CREATE TABLE sessions (
         id uuid PRIMARY KEY DEFAULT gen_random_uuid(),
         user_id uuid NOT NULL REFERENCES users ON DELETE CASCADE,
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         last_seen_at timestamptz NOT NULL DEFAULT now(),
         expires_at timestamptz NOT NULL
       );

@@ -13,7 +13,7 @@ export const studies: Migration = {
         description text NOT NULL DEFAULT '',
         correlation jsonb NOT NULL,
         created_by uuid REFERENCES users ON DELETE SET NULL,
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         updated_at timestamptz NOT NULL DEFAULT now()
       );
       CREATE INDEX studies_team ON studies (team_id, created_at DESC, id);
@@ -25,7 +25,7 @@ export const studies: Migration = {
         file_name text NOT NULL,
         byte_length bigint NOT NULL,
         sha256 text NOT NULL CHECK (sha256 ~ '^[0-9a-f]{64}$'),
-        created_at timestamptz NOT NULL DEFAULT now()
+        created_at timestamptz(3) NOT NULL DEFAULT now()
       );
       CREATE INDEX stored_files_team ON stored_files (team_id);
       CREATE TABLE stored_file_chunks (
@@ -51,7 +51,7 @@ export const studies: Migration = {
         facts jsonb NOT NULL,
         columns_bundle bytea NOT NULL,
         created_by uuid REFERENCES users ON DELETE SET NULL,
-        created_at timestamptz NOT NULL DEFAULT now()
+        created_at timestamptz(3) NOT NULL DEFAULT now()
       );
       CREATE INDEX observation_sets_study ON observation_sets (study_id, created_at DESC, id);
       CREATE INDEX observation_sets_team ON observation_sets (team_id);
@@ -83,7 +83,7 @@ export const studies: Migration = {
         error jsonb,
         cancel_requested boolean NOT NULL DEFAULT false,
         attempt integer NOT NULL DEFAULT 0,
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         started_at timestamptz,
         finished_at timestamptz,
         heartbeat_at timestamptz
@@ -103,7 +103,7 @@ export const studies: Migration = {
         check_job_id uuid REFERENCES jobs ON DELETE SET NULL,
         check_revision integer,
         updated_by uuid REFERENCES users ON DELETE SET NULL,
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         updated_at timestamptz NOT NULL DEFAULT now()
       );
       CREATE INDEX designs_study ON designs (study_id, created_at DESC, id);

@@ -30,7 +30,7 @@ export const versions: Migration = {
         job_id uuid UNIQUE,
         saved_by uuid REFERENCES users,
         saved_by_name text NOT NULL,
-        saved_at timestamptz NOT NULL DEFAULT now(),
+        saved_at timestamptz(3) NOT NULL DEFAULT now(),
         UNIQUE (study_id, number),
         CHECK (verdict <> 'fail' OR waiver IS NOT NULL)
       );
@@ -56,7 +56,7 @@ export const versions: Migration = {
         media_type text NOT NULL,
         sha256 text NOT NULL CHECK (sha256 ~ '^[0-9a-f]{64}$'),
         bytes bytea NOT NULL,
-        created_at timestamptz NOT NULL DEFAULT now(),
+        created_at timestamptz(3) NOT NULL DEFAULT now(),
         PRIMARY KEY (version_id, format)
       );
       CREATE INDEX export_files_team ON export_files (team_id);

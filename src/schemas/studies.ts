@@ -7,7 +7,12 @@ export const createStudySchema = z.strictObject({
   description: z.string().trim().max(2000).default(''),
   correlation: correlationSchema,
 });
-export const updateStudySchema = createStudySchema.partial();
+/** What is absent stays as it is. */
+export const updateStudySchema = z.strictObject({
+  name: createStudySchema.shape.name.optional(),
+  description: z.string().trim().max(2000).optional(),
+  correlation: correlationSchema.optional(),
+});
 
 export const studySchema = z.object({
   id: z.string(),

@@ -1,0 +1,59 @@
+import { availableParallelism } from 'node:os';
+import { fileURLToPath } from 'node:url';
+import { MessageChannel } from 'node:worker_threads';
+
+import { Piscina } from 'piscina';
+
+import { NumericalError } from '#core/errors.ts';
+import type { NumericalErrorCode } from '#core/errors.ts';
+import { getEnv } from '#server/env.ts';
+
+import type { ThreadCall, ThreadError, ThreadProgress } from './numerics.thread.ts';
+
+let pool: Piscina | undefined;
+
+const getPool = (): Piscina => {
+  if (!pool) {
+    const extension = import.meta.url.endsWith('.ts') ? 'ts' : 'js';
+    pool = new Piscina({
+      filename: fileURLToPath(new URL(`./numerics.thread.${extension}`, import.meta.url)),
+      maxThreads: getEnv().workerThreads || availableParallelism(),
+      minThreads: 1,
+      idleTimeout: 60_000,
+    });
+  }
+  return pool;
+};
+
+export interface ThreadOptions {
+  /** Ends the thread at once when aborted. */
+  signal?: AbortSignal;
+  onProgress?: (fraction: number, phase: string) => void;
+  /** Batches that the call hands over before it ends. */
+  onBatch?: (batch: unknown) => void;
+}
+
+/** Runs one call of `numerics.thread.ts` in a thread of its own. @throws NumericalError as the call threw it; the signal's reason when aborted */
+export const runInThread = async <T>(call: ThreadCall, { signal, onProgress, onBatch }: ThreadOptions = {}): Promise<T> => {
+  const { port1, port2 } = new MessageChannel();
+  port1.on('message', (message: ThreadProgress) => {
+    if (message.batch !== undefined) onBatch?.(message.batch);
+    else onProgress?.(message.fraction, message.phase);
+  });
+  try {
+    const answer = (await getPool().run({ call, port: port2 }, { transferList: [port2], signal })) as { value: T } | { error: ThreadError };
+    if ('error' in answer) throw new NumericalError(answer.error.code as NumericalErrorCode, answer.error.message, { details: answer.error.details });
+    return answer.value;
+  } catch (error) {
+    if (signal?.aborted) throw signal.reason;
+    throw error;
+  } finally {
+    port1.close();
+  }
+};
+
+/** Ends all threads. */
+export const closeThreads = async (): Promise<void> => {
+  await pool?.destroy();
+  pool = undefined;
+};
