@@ -1,0 +1,44 @@
+import { NumericalError } from '#core/errors.ts';
+import { createRecipeRunner } from '#core/design/run-recipe.ts';
+import { unpackObservations } from '#core/formats/observation-bundle.ts';
+import { createDisplayProjection, frameOf } from '#client/map/display-projection.ts';
+
+import type { ComputeOptions } from './design/compute-design.ts';
+import { computeDesign, transferables } from './design/compute-design.ts';
+import type { WorkerAnswer, WorkerCommand } from './design/design-engine.ts';
+
+let options: ComputeOptions | null = null;
+
+const answer = (message: WorkerAnswer, transfer: ArrayBuffer[] = []): void => self.postMessage(message, { transfer });
+
+self.addEventListener('message', ({ data }: MessageEvent<WorkerCommand>) => {
+  try {
+    switch (data.command) {
+      case 'load': {
+        const columns = unpackObservations(new Uint8Array(data.bytes));
+        const frame = frameOf(columns.crs, columns.x, columns.y, data.sphereRadiusKm);
+        options = {
+          runner: createRecipeRunner(columns),
+          projection: createDisplayProjection(frame),
+          rows: columns.x.length,
+          onPhase: (phase, fraction) => answer({ answer: 'phase', phase, fraction }),
+          now: () => performance.now(),
+        };
+        return answer({ answer: 'loaded', frame, rows: columns.x.length });
+      }
+      case 'build': {
+        const result = computeDesign(data.request, options!);
+        return answer({ answer: 'built', id: data.id, result }, [...transferables(result)]);
+      }
+    }
+  } catch (error) {
+    const known = error instanceof NumericalError;
+    answer({
+      answer: 'failed',
+      id: data.command === 'build' ? data.id : 0,
+      code: known ? error.code : 'UNEXPECTED',
+      message: known ? error.message : `The mesh could not be built (${String(error)}). The recipe is kept; change it or reload the page.`,
+      details: known ? error.details : {},
+    });
+  }
+});
