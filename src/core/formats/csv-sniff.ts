@@ -82,10 +82,15 @@ const bestLook = (head: Uint8Array, hints: CsvHints): Look => {
 /** Rows this regular may have a stray one among them. */
 const REGULAR = 0.8;
 
+/** Spaces also stand inside names and times, so they must win by more than what that adds. */
+const SPACE_HANDICAP = 0.15;
+
 const isBetter = (a: Look, b: Look): boolean => {
-  const grade = ({ fieldCount, regular }: Look): number => (fieldCount < 2 ? 0 : regular >= REGULAR ? 2 : 1);
+  const grade = ({ rows, fieldCount, regular }: Look): number =>
+    fieldCount < 2 ? 0 : 1 + (regular >= REGULAR ? 2 : 0) + (rows[0].length === fieldCount ? 1 : 0);
+  const numbers = ({ delimiter, numeric }: Look): number => numeric - (delimiter === ' ' ? SPACE_HANDICAP : 0);
   if (grade(a) !== grade(b)) return grade(a) > grade(b);
-  if (Math.abs(a.numeric - b.numeric) > 0.01) return a.numeric > b.numeric;
+  if (Math.abs(numbers(a) - numbers(b)) > 0.01) return numbers(a) > numbers(b);
   return a.regular > b.regular;
 };
 

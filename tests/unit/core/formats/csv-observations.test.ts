@@ -24,6 +24,8 @@ describe('sniffCsv', () => {
     ['time,lon,lat\n2026-01-01 00:00:00,1,2\n2026-01-01 01:00:00,3,4\n', ','],
     ['lat,lon\n12 30 45 S,10 15 30 E\n13 30 45 S,11 15 30 E\n', ','],
     ['a;b\n1,5;2,25\n', ';'],
+    ['lon\tlat\ttrack\n1\t2\tleg 1\n3\t4\tleg 2\n', '\t'],
+    ['1\t2\tleg 1\n3\t4\tleg 2\n', '\t'],
   ])('finds the delimiter of %j', (text, delimiter) => {
     expect(sniffCsv(utf8(text)).delimiter).toBe(delimiter);
   });
