@@ -6,7 +6,7 @@ export interface ClippedVoronoi {
   area: Float64Array;
   /** Centroid of each cell, 2 per point; the point itself where the cell has no area. */
   centroid: Float64Array;
-  /** The nearest other point; -1 for a point that the triangulation left out. */
+  /** The nearest other point. */
   nearest: Int32Array;
   /** Corners of cell i as x, y, x, y, ...; empty where the cell has no area. */
   cell(i: number): number[];
@@ -152,7 +152,7 @@ const measure = (ring: number[], i: number, area: Float64Array, centroid: Float6
   centroid[2 * i + 1] += my / (3 * twice);
 };
 
-/** The nearest point is always a Delaunay neighbour (of equally near ones the lowest index is taken). */
+/** The nearest point is a Delaunay neighbour (of equally near ones the lowest index is taken). */
 const nearestNeighbours = ({ triangles }: Delaunay<unknown>, points: Float64Array): Int32Array => {
   const nearest = new Int32Array(points.length / 2).fill(-1);
   const least = new Float64Array(points.length / 2).fill(Infinity);
@@ -169,6 +169,22 @@ const nearestNeighbours = ({ triangles }: Delaunay<unknown>, points: Float64Arra
     const distance2 = dx * dx + dy * dy;
     offer(i, j, distance2);
     offer(j, i, distance2);
+  }
+  for (let i = 0; i < nearest.length; i++) if (nearest[i] < 0) nearest[i] = nearestByScan(points, i);
+  return nearest;
+};
+
+/** For the few points that the triangulation leaves out because they all but touch another one. */
+const nearestByScan = (points: Float64Array, i: number): number => {
+  let nearest = -1;
+  let least = Infinity;
+  for (let j = 0; j < points.length / 2; j++) {
+    const dx = points[2 * j] - points[2 * i];
+    const dy = points[2 * j + 1] - points[2 * i + 1];
+    const distance2 = dx * dx + dy * dy;
+    if (j === i || distance2 >= least) continue;
+    least = distance2;
+    nearest = j;
   }
   return nearest;
 };

@@ -21,7 +21,7 @@ interface Points {
   y: Float64Array;
 }
 
-/** Plane coordinates about a million across, and the way back to the ground. */
+/** Plane coordinates about a million across, 2 per point, and the way back to the ground. */
 interface Flattened {
   points: Float64Array;
   /** Ground km per plane unit at a plane position. */
@@ -32,6 +32,10 @@ interface Flattened {
 }
 
 const EXTENT = 2 ** 20;
+/** Points closer than this are one place: the triangulation does not keep such pairs apart reliably. */
+const ONE_PLACE = 2 ** -12;
+/** A smaller extent in km is no distance: its square would underflow. */
+const SMALLEST_EXTENT = 1e-100;
 
 /** A set narrower than this share of its length counts as a line. */
 const NARROWEST = 1e-9;
@@ -46,7 +50,7 @@ const DISC_SIDE = Math.sqrt(Math.PI) / 2;
  * On the sphere the cells are those of a stereographic projection (conformal, so locally the cells of the ground) and
  * areas are divided by the squared scale at the cell's centroid.
  *
- * Points in one place share a spacing. Points on one line have cells without area: sqrt(pi)/2 d remains. A single
+ * Points in one place (within 2^-32 of the set's extent) share a spacing. Points on one line have cells without area: sqrt(pi)/2 d remains. A single
  * place has no spacing: 0.
  * @throws NumericalError INPUT_NOT_FINITE naming the point.
  */
@@ -60,55 +64,60 @@ export const localSpacing = (
     if (!Number.isFinite(points.x[i]) || !Number.isFinite(points.y[i]))
       throw new NumericalError('INPUT_NOT_FINITE', `Point ${i} has no finite position. Leave it out.`, { details: { index: i } });
 
-  const { placeOf, places } = findPlaces(points);
-  const flat = points.crs === 'plane-km' ? flattenPlane(points, places) : flattenSphere(points, places, radiusKm);
+  const flat = points.crs === 'plane-km' ? flattenPlane(points) : flattenSphere(points, radiusKm);
+  const { placeOf, places } = findPlaces(flat.points);
+  const positions = new Float64Array(2 * places.length);
+  for (const [place, i] of places.entries()) positions.set(flat.points.subarray(2 * i, 2 * i + 2), 2 * place);
+  const distance = (a: number, b: number): number => flat.groundDistance(places[a], places[b]);
   const spacing = new Float64Array(places.length);
   const areaKm2 = new Float64Array(places.length);
   let cellOf: (place: number) => number[] = () => [];
-  const line = places.length < 3 ? lineOrder(flat.points) : findLine(flat.points);
+  const line = places.length < 3 ? lineOrder(positions) : findLine(positions);
   if (line) {
     for (let k = 0; k < line.length; k++) {
-      const before = k > 0 ? flat.groundDistance(line[k - 1], line[k]) : Infinity;
-      const after = k + 1 < line.length ? flat.groundDistance(line[k], line[k + 1]) : Infinity;
+      const before = k > 0 ? distance(line[k - 1], line[k]) : Infinity;
+      const after = k + 1 < line.length ? distance(line[k], line[k + 1]) : Infinity;
       const nearest = Math.min(before, after);
       spacing[line[k]] = nearest === Infinity ? 0 : DISC_SIDE * nearest;
     }
   } else {
-    const voronoi = clipVoronoi(flat.points);
+    const voronoi = clipVoronoi(positions);
     cellOf = voronoi.cell;
     for (let place = 0; place < places.length; place++) {
       const scale = flat.groundScale(voronoi.centroid[2 * place], voronoi.centroid[2 * place + 1]);
       areaKm2[place] = voronoi.area[place] * scale * scale;
-      const nearest = voronoi.nearest[place];
-      const floor = nearest < 0 ? 0 : DISC_SIDE * flat.groundDistance(place, nearest);
-      spacing[place] = Math.max(Math.sqrt(areaKm2[place]), floor);
+      spacing[place] = Math.max(Math.sqrt(areaKm2[place]), DISC_SIDE * distance(place, voronoi.nearest[place]));
     }
   }
   return {
-    spacingKm: Float64Array.from(placeOf, (place) => spacing[place]),
-    cellAreaKm2: Float64Array.from(placeOf, (place) => areaKm2[place]),
+    spacingKm: spread(spacing, placeOf),
+    cellAreaKm2: spread(areaKm2, placeOf),
     ...(withCells && { cells: collectCells(placeOf, cellOf, flat) }),
   };
 };
 
-/** Points that differ: `places` holds the first point of each place, `placeOf` the place of each point. */
-const findPlaces = ({ x, y }: Points): { placeOf: Uint32Array; places: number[] } => {
-  const count = x.length;
+const spread = (values: Float64Array, placeOf: Uint32Array): Float64Array => {
+  const out = new Float64Array(placeOf.length);
+  for (let i = 0; i < out.length; i++) out[i] = values[placeOf[i]];
+  return out;
+};
+
+/** Points that are apart: `places` holds the first point of each place, `placeOf` the place of each point. */
+const findPlaces = (points: Float64Array): { placeOf: Uint32Array; places: number[] } => {
+  const count = points.length / 2;
   const positions = new Float64Array(3 * count);
-  for (let i = 0; i < count; i++) {
-    positions[3 * i] = x[i] + 0;
-    positions[3 * i + 1] = y[i] + 0;
-  }
-  const grid = createPointGrid(positions, 0, count, true);
-  const placeOf = new Uint32Array(count);
+  for (let i = 0; i < count; i++) positions.set(points.subarray(2 * i, 2 * i + 2), 3 * i);
+  const grid = createPointGrid(positions, ONE_PLACE, count, true);
   const places: number[] = [];
+  const numberOf = new Uint32Array(count);
   for (let i = 0; i < count; i++) {
-    const first = grid.nearest(i);
-    placeOf[i] = first < 0 ? places.length : placeOf[first];
-    if (first >= 0) continue;
+    if (grid.hasNear(i)) continue;
+    numberOf[i] = places.length;
     places.push(i);
     grid.insert(i);
   }
+  const placeOf = new Uint32Array(count);
+  for (let i = 0; i < count; i++) placeOf[i] = numberOf[grid.nearest(i)];
   return { placeOf, places };
 };
 
@@ -123,7 +132,7 @@ const normalise = (points: Float64Array): { toUnit: number; ox: number; oy: numb
   }
   const extent = Math.max(east - west, north - south);
   let toUnit = 1;
-  if (extent > 0 && extent < Infinity) {
+  if (extent > SMALLEST_EXTENT && extent < Infinity) {
     while (extent * toUnit > EXTENT) toUnit /= 2;
     while (extent * toUnit < EXTENT / 2) toUnit *= 2;
   }
@@ -136,11 +145,11 @@ const normalise = (points: Float64Array): { toUnit: number; ox: number; oy: numb
   return { toUnit, ox, oy };
 };
 
-const flattenPlane = ({ x, y }: Points, places: number[]): Flattened => {
-  const points = new Float64Array(2 * places.length);
-  for (const [place, i] of places.entries()) {
-    points[2 * place] = x[i];
-    points[2 * place + 1] = y[i];
+const flattenPlane = ({ x, y }: Points): Flattened => {
+  const points = new Float64Array(2 * x.length);
+  for (let i = 0; i < x.length; i++) {
+    points[2 * i] = x[i];
+    points[2 * i + 1] = y[i];
   }
   const { toUnit, ox, oy } = normalise(points);
   return {
@@ -158,13 +167,11 @@ const flattenPlane = ({ x, y }: Points, places: number[]): Flattened => {
   };
 };
 
-const flattenSphere = ({ x, y }: Points, places: number[], radiusKm: number): Flattened => {
-  const lon = Float64Array.from(places, (i) => x[i]);
-  const lat = Float64Array.from(places, (i) => y[i]);
+const flattenSphere = ({ x: lon, y: lat }: Points, radiusKm: number): Flattened => {
   const [centreLon, centreLat] = chooseCentre(lon, lat);
   const projection = createStereographic(centreLon, centreLat, radiusKm);
-  const points = new Float64Array(2 * places.length);
-  for (let place = 0; place < places.length; place++) projection.forward(lon[place], lat[place], points, 2 * place);
+  const points = new Float64Array(2 * lon.length);
+  for (let i = 0; i < lon.length; i++) projection.forward(lon[i], lat[i], points, 2 * i);
   const { toUnit, ox, oy } = normalise(points);
   return {
     points,
