@@ -213,6 +213,17 @@ describe('near observations', () => {
     expect(polar.y[0]).toBeCloseTo(90, 10);
   });
 
+  it('are combined again where their means come too near, until they keep their distance', () => {
+    const row = (x: number): Row => [x, 0];
+    // round 1: means 0.3675 and 0.6325; round 2: the mean of all eight
+    const columns = setOf('plane-km', [0, 1, 0.49, 0.49, 0.49, 0.51, 0.51, 0.51, 20].map(row));
+    expect([...select(columns, { near: { km: 1, rule: 'combine' } }).x]).toEqual([expect.closeTo(0.5, 12), 20]);
+    const chained = setOf('plane-km', [0, 1, 0.49, 0.49, 0.49, 0.51, 0.51, 0.51, -0.45, -0.45, -0.45, -0.45, -1.2].map(row));
+    const { x, rowStart } = select(chained, { near: { km: 1, rule: 'combine' } });
+    expect(rowStart.length - 1).toBe(x.length);
+    for (let i = 1; i < x.length; i++) expect(Math.abs(x[i] - x[0])).toBeGreaterThanOrEqual(1);
+  });
+
   it('leave a linear field as it is', () => {
     const field = (x: number, y: number): number => 3 + 0.5 * x - 2 * y;
     const rows: Row[] = Array.from({ length: 300 }, (_, k) => {
