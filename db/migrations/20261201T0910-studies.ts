@@ -59,8 +59,9 @@ export const studies: Migration = {
       CREATE INDEX observation_sets_creator ON observation_sets (created_by);
       ALTER TABLE observation_sets ALTER COLUMN columns_bundle SET STORAGE EXTERNAL;
 
+      -- deferred: rejected rows are written while the file is read, the set itself at the end of the same transaction
       CREATE TABLE rejected_rows (
-        observation_set_id uuid NOT NULL REFERENCES observation_sets ON DELETE CASCADE,
+        observation_set_id uuid NOT NULL REFERENCES observation_sets ON DELETE CASCADE DEFERRABLE INITIALLY DEFERRED,
         number integer NOT NULL,
         line integer NOT NULL,
         field text NOT NULL,

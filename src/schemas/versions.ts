@@ -58,6 +58,8 @@ export const exportSchema = z.object({
   format: exportFormatSchema,
   fileName: z.string(),
   mediaType: z.string(),
+  /** Lower-case hexadecimal SHA-256 of the file. */
+  sha256: z.string(),
   description: z.string(),
   url: z.string(),
 });

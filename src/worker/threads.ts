@@ -40,8 +40,11 @@ export const runInThread = async <T>(call: ThreadCall, { signal, onProgress, onB
     if (message.batch !== undefined) onBatch?.(message.batch);
     else onProgress?.(message.fraction, message.phase);
   });
+  // closing comes after every message that the thread sent, which its answer need not
+  const closed = new Promise((resolve) => port1.once('close', resolve));
   try {
     const answer = (await getPool().run({ call, port: port2 }, { transferList: [port2], signal })) as { value: T } | { error: ThreadError };
+    await closed;
     if ('error' in answer) throw new NumericalError(answer.error.code as NumericalErrorCode, answer.error.message, { details: answer.error.details });
     return answer.value;
   } catch (error) {
