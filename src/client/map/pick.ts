@@ -5,6 +5,8 @@ export interface Picker {
   near(x: number, y: number, reach: number): number;
   /** The joined point that lies best in a direction (a unit vector), or -1 when none lies within 75 degrees of it. */
   step(from: number, dx: number, dy: number): number;
+  /** Distance to the farthest joined point. */
+  spacing(of: number): number;
 }
 
 /** Finds points by place and by direction; the triangulation behind it is made when first asked for. */
@@ -36,6 +38,11 @@ export const createPicker = (positions: Float32Array): Picker => {
         }
       }
       return best;
+    },
+    spacing(of) {
+      let farthest = 0;
+      for (const k of made().neighbors(of)) farthest = Math.max(farthest, Math.hypot(positions[2 * k] - positions[2 * of], positions[2 * k + 1] - positions[2 * of + 1]));
+      return farthest;
     },
   };
 };
