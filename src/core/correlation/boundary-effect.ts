@@ -7,22 +7,19 @@
 import { NumericalError } from '#core/errors.ts';
 import type { BoundaryMesh, BoundarySegments } from './boundary-segments.ts';
 import { boundarySegments } from './boundary-segments.ts';
+import { spreadCurvature } from './spread-curvature.ts';
 import { largestComponent, straightComponentExcess } from './component-excess.ts';
 import { correlationChangeOf } from './correlation-change.ts';
 import type { EffectTables } from './effect-tables.ts';
 import { effectTables, lookUp } from './effect-tables.ts';
+import { RAYS, RAY_STEP, excessOfRays, rayX, rayY } from './ray-sum.ts';
+import { cornersOf, excessOfCorners } from './corner-excess.ts';
 import { largestOverShares } from './margin-effect.ts';
 import { maternCorrelation } from './matern.ts';
 import type { CorrelationModel } from './model.ts';
 import { resolveScale } from './scale.ts';
 
 export { bufferForTolerance, cornerExcess, effectInForce, straightSideExcess } from './margin-effect.ts';
-
-/** Rays per point: the ray sum of a straight side is exact to 1e-6 of its value. */
-const RAYS = 72;
-const RAY_STEP = (2 * Math.PI) / RAYS;
-const rayX = Float64Array.from({ length: RAYS }, (_, k) => Math.cos(k * RAY_STEP));
-const rayY = Float64Array.from({ length: RAYS }, (_, k) => Math.sin(k * RAY_STEP));
 
 /** One value per point: relative change of the variance, largest absolute change of a correlation. */
 export interface BoundaryEffect {
@@ -42,30 +39,20 @@ export function predictBoundaryEffect(mesh: BoundaryMesh, at: Float64Array, mode
   const { scaleKm } = resolveScale(model);
   const tables = effectTables(model.steps);
   const segments = boundarySegments(mesh);
-  const sweep = createSweep(mesh, segments, tables, scaleKm);
+  const spread = spreadCurvature(segments, scaleKm);
+  const corners = cornersOf(segments, mesh.crs === 'lonlat-deg');
+  const frame = new Float64Array(9);
+  const sweep = createSweep(mesh, segments, spread, tables, scaleKm);
   const variance = new Float64Array(count);
   const correlation = new Float64Array(count);
   for (let i = 0; i < count; i++) {
     if (!sweep.cast(at[2 * i], at[2 * i + 1])) continue;
-    const excess = excessOfRays(tables, sweep.distance, sweep.curvature, scaleKm);
+    writeFrame(at[2 * i], at[2 * i + 1], mesh.crs === 'lonlat-deg' ? mesh.radiusKm : 0, frame);
+    const excess = Math.max(0, excessOfRays(tables, sweep.distance, sweep.curvature, scaleKm) + excessOfCorners(corners, tables, frame, scaleKm));
     correlation[i] = correlationChangeOf(model.steps, excess);
     variance[i] = model.kind === 'vector' ? vectorVariance(model, excess) : excess;
   }
   return { variance, correlation };
-}
-
-function excessOfRays(tables: EffectTables, distance: Float64Array, curvature: Float64Array, scaleKm: number): number {
-  let sum = 0;
-  for (let k = 0; k < RAYS; k++) {
-    const r = distance[k] / scaleKm;
-    if (r >= tables.reach) continue;
-    const bend = curvature[k] * scaleKm * lookUp(tables.gain, r);
-    // a hole scatters: its curvature weakens the effect, never below zero
-    sum += lookUp(tables.rayDensity, r) * (bend >= 0 ? 1 + bend : 1 / (1 - bend));
-    const both = r + distance[(k + RAYS / 2) % RAYS] / scaleKm;
-    if (both < tables.reach) sum += lookUp(tables.rayDensity, both);
-  }
-  return sum * RAY_STEP;
 }
 
 function vectorVariance(model: CorrelationModel, excess: number): number {
@@ -86,7 +73,7 @@ function straightDistance(m: number, excess: number): number {
 }
 
 /** Casts all rays of one point: `distance` (km, Infinity: nothing within reach) and `curvature` (1/km) of each first hit. */
-function createSweep(mesh: BoundaryMesh, segments: BoundarySegments, tables: EffectTables, scaleKm: number) {
+function createSweep(mesh: BoundaryMesh, segments: BoundarySegments, spread: Float64Array, tables: EffectTables, scaleKm: number) {
   const distance = new Float64Array(RAYS);
   const curvature = new Float64Array(RAYS);
   const { positions, groupStart, groupBall } = segments;
@@ -148,7 +135,7 @@ function createSweep(mesh: BoundaryMesh, segments: BoundarySegments, tables: Eff
           const r = cross / (rayX[ray] * sy - rayY[ray] * sx);
           if (r > 0 && r < distance[ray]) {
             distance[ray] = r;
-            curvature[ray] = segments.curvature[e - 1];
+            curvature[ray] = spread[e - 1];
           }
         }
       }

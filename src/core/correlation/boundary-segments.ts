@@ -16,6 +16,8 @@ export interface BoundarySegments {
   curvature: Float64Array;
   /** First edge of each group, and the edge count at the end. */
   groupStart: Uint32Array;
+  /** First group of each loop, and the group after its last. */
+  loopGroups: [number, number][];
   /** Ball round each group: centre and radius, 4 per group, km. */
   groupBall: Float64Array;
 }
@@ -30,17 +32,20 @@ export function boundarySegments(mesh: BoundaryMesh): BoundarySegments {
   const starts: number[] = [];
   const vertices: number[] = [];
   let e = 0;
-  for (const loop of mesh.boundaryLoops)
+  const loopGroups: [number, number][] = [];
+  for (const loop of mesh.boundaryLoops) {
+    loopGroups.push([starts.length, starts.length + Math.ceil(loop.length / GROUP)]);
     for (let first = 0; first < loop.length; first += GROUP) {
       const edges = Math.min(GROUP, loop.length - first);
       starts.push(e);
       for (let k = 0; k <= edges; k++) vertices.push(loop[(first + k) % loop.length]);
       e += edges;
     }
+  }
   const positions = new Float64Array(3 * vertices.length);
   vertices.forEach((v, k) => positions.set(node.subarray(3 * v, 3 * v + 3), 3 * k));
   const groupStart = Uint32Array.from([...starts, count]);
-  return { positions, curvature: mesh.boundaryCurvature, groupStart, groupBall: groupBalls(positions, groupStart) };
+  return { positions, curvature: mesh.boundaryCurvature, groupStart, loopGroups, groupBall: groupBalls(positions, groupStart) };
 }
 
 function groupBalls(positions: Float64Array, groupStart: Uint32Array): Float64Array {

@@ -32,6 +32,8 @@ export interface EffectTables {
    * exact together with the second reflection h(2r).
    */
   gain: Float64Array;
+  /** c(2x) at x = i TABLE_STEP: the excess that a straight side at distance x causes. */
+  image: Float64Array;
   /** For a closest boundary vertex at r: the distance beyond which boundary adds less than a thousandth of the effect. */
   relativeReach: Float64Array;
 }
@@ -67,7 +69,8 @@ export function effectTables(m: number): EffectTables {
     const b = at(i + coarse);
     for (let j = 0; j < coarse && i + j < count; j++) gain[i + j] = a + ((b - a) * j) / coarse;
   }
-  const tables = { steps: m, reach, rayDensity: h, gain, relativeReach: relativeReachOf(h) };
+  const image = Float64Array.from(h, (_, i) => maternCorrelation(m, 2 * i * TABLE_STEP));
+  const tables = { steps: m, reach, rayDensity: h, gain, image, relativeReach: relativeReachOf(h) };
   cache.set(m, tables);
   return tables;
 }
