@@ -99,7 +99,7 @@ export default tseslint.config(
     languageOptions: { globals: { ...globals.browser, ...globals.worker } },
   },
   {
-    files: ['src/launch/**', 'src/cli/**', 'src/server/manage/**', 'src/server/http/main.ts', 'db/private-postgres.js', 'db/seeders/**', 'fixtures/**', 'tests/**', '*.config.*'],
+    files: ['src/launch/**', 'src/cli/**', 'src/worker/manage/**', 'src/server/http/main.ts', 'db/private-postgres.js', 'db/seeders/**', 'fixtures/**', 'tests/**', '*.config.*'],
     languageOptions: { globals: globals.node },
     rules: { 'no-console': 'off' },
   },

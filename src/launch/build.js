@@ -73,7 +73,7 @@ function buildWeb(folder) {
 
 async function buildPrograms(folder) {
   const { build } = await import('esbuild');
-  const programs = { web: 'src/server/http/main.ts', manage: 'src/server/manage/main.ts', 'worker/main': 'src/worker/main.ts', 'cli/main': 'src/cli/main.ts' };
+  const programs = { web: 'src/server/http/main.ts', 'worker/manage': 'src/worker/manage/main.ts', 'worker/main': 'src/worker/main.ts', 'cli/main': 'src/cli/main.ts' };
   const entryPoints = Object.entries(programs)
     .filter(([, source]) => fs.existsSync(path.join(ROOT, source)))
     .map(([out, source]) => ({ in: source, out }));

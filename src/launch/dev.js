@@ -31,7 +31,7 @@ async function main() {
     if (port !== wanted) say(`Port ${wanted} is taken; using ${port}.`);
     const env = childEnvironment({ folder, url: database.url, port });
     const tsx = ['--import', 'tsx'];
-    manage([...tsx, 'src/server/manage/main.ts', 'prepare'], env);
+    manage([...tsx, 'src/worker/manage/main.ts', 'prepare'], env);
     lock.note(`http://127.0.0.1:${port}`);
     processes.node('web server', ['node_modules/astro/astro.js', 'dev', '--port', String(port), '--host', env.HOST], { env: { ...env, ASTRO_TELEMETRY_DISABLED: '1', ASTRO_DISABLE_UPDATE_CHECK: 'true' }, patience: 3_000 });
     if (fs.existsSync(path.join(ROOT, 'src/worker/main.ts'))) processes.node('worker', [...tsx, 'src/worker/main.ts'], { env });

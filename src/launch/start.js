@@ -55,7 +55,7 @@ async function serve({ folder, build, database, processes, lock }) {
   const { port, wanted } = await choosePort();
   if (port !== wanted) say(`Port ${wanted} is taken; using ${port}.`);
   const env = { ...childEnvironment({ folder, url: database.url, port }), NODE_ENV: 'production' };
-  manage([path.join(build, 'manage.js'), 'prepare'], env);
+  manage([path.join(build, 'worker/manage.js'), 'prepare'], env);
   const onLine = createPrinter();
   const web = processes.node('web server', ['--enable-source-maps', path.join(build, 'web.js')], { env, onLine });
   const worker = path.join(build, 'worker/main.js');

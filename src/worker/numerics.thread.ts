@@ -19,6 +19,8 @@ export interface ThreadProgress {
   fraction: number;
   phase: string;
   batch?: unknown;
+  /** Nothing follows. */
+  isLast?: boolean;
 }
 
 export interface ThreadTools {
@@ -43,6 +45,7 @@ export default async ({ call, port }: { call: ThreadCall; port: MessagePort }): 
     if (error instanceof NumericalError) return { error: { code: error.code, message: error.message, details: error.details } };
     throw error;
   } finally {
+    port.postMessage({ fraction: 1, phase: '', isLast: true } satisfies ThreadProgress);
     port.close();
   }
 };

@@ -36,15 +36,17 @@ export interface ThreadOptions {
 /** Runs one call of `numerics.thread.ts` in a thread of its own. @throws NumericalError as the call threw it; the signal's reason when aborted */
 export const runInThread = async <T>(call: ThreadCall, { signal, onProgress, onBatch }: ThreadOptions = {}): Promise<T> => {
   const { port1, port2 } = new MessageChannel();
+  let end: () => void = () => undefined;
+  // the last message comes after every batch, which the call's answer need not
+  const ended = new Promise<void>((resolve) => (end = resolve));
   port1.on('message', (message: ThreadProgress) => {
-    if (message.batch !== undefined) onBatch?.(message.batch);
+    if (message.isLast) end();
+    else if (message.batch !== undefined) onBatch?.(message.batch);
     else onProgress?.(message.fraction, message.phase);
   });
-  // closing comes after every message that the thread sent, which its answer need not
-  const closed = new Promise((resolve) => port1.once('close', resolve));
   try {
     const answer = (await getPool().run({ call, port: port2 }, { transferList: [port2], signal })) as { value: T } | { error: ThreadError };
-    await closed;
+    await ended;
     if ('error' in answer) throw new NumericalError(answer.error.code as NumericalErrorCode, answer.error.message, { details: answer.error.details });
     return answer.value;
   } catch (error) {

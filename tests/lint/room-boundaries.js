@@ -59,7 +59,7 @@ const TABLE = {
   worker: { rooms: [...CORE, 'schemas', 'db', 'server', 'fixtures'], not: REACT, astro: false, advice: 'The worker runs outside Astro. Page logic belongs in src/pages, browser code in src/client.' },
   cli: { rooms: [...CORE, 'schemas', 'db', 'server', 'worker', 'fixtures'], not: REACT, astro: false, advice: 'The command line runs outside Astro. Page logic belongs in src/pages, browser code in src/client.' },
   db: { rooms: ['schemas', 'fixtures'], not: REACT, astro: false, advice: 'The database is handed its settings and knows no service. Code that needs one belongs in src/server.' },
-  launch: { rooms: ['db'], packages: ['esbuild'], astro: false, advice: 'The launcher runs before packages are installed: Node alone, and the private PostgreSQL of db/. What needs packages belongs in src/server/manage.' },
+  launch: { rooms: ['db'], packages: ['esbuild'], astro: false, advice: 'The launcher runs before packages are installed: Node alone, and the private PostgreSQL of db/. What needs packages belongs in src/worker/manage.' },
   fixtures: { rooms: [...CORE, 'schemas'], not: REACT, astro: false, advice: 'Generators of sample data use core and schemas alone.' },
 };
 
