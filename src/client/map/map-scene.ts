@@ -146,8 +146,8 @@ export const createMapScene = (requestFrame: () => void): MapScene => {
 
   const landMaterial = flat(0.999);
   const shoreMaterial = thin(0.7);
-  const coreMaterial = flat(0.92);
-  const bufferMaterial = flat(0.92);
+  const coreMaterial = flat(0.82);
+  const bufferMaterial = flat(0.82);
   const cellMaterial = shader(CELL_VERTEX, CELL_FRAGMENT);
   const edgeMaterial = thin(0.5);
   const placeMaterial = flat(0.75);
@@ -168,10 +168,11 @@ export const createMapScene = (requestFrame: () => void): MapScene => {
   };
   const empty = (): THREE.BufferGeometry => new THREE.BufferGeometry();
   const land = add(new THREE.Mesh(empty(), landMaterial));
-  const shore = add(new THREE.LineSegments(empty(), shoreMaterial));
   const core = add(new THREE.Mesh(empty(), coreMaterial));
   const buffer = add(new THREE.Mesh(empty(), bufferMaterial));
   const cells = add(new THREE.Mesh(empty(), cellMaterial));
+  // over the elements, so that the coast is seen through the mesh
+  const shore = add(new THREE.LineSegments(empty(), shoreMaterial));
   const edges = add(new THREE.LineSegments(empty(), edgeMaterial));
   const place = add(new THREE.Mesh(empty(), placeMaterial));
   const outline = add(new LineSegments2(new LineSegmentsGeometry(), outlineMaterial));

@@ -105,7 +105,7 @@ const Workbench = ({ session, state, isReadOnly }: Held & { isReadOnly: boolean 
       )}
       <ReadOuts result={result} model={model} />
       <div className="grid lg:grid-cols-[minmax(0,1fr)_22rem]">
-        <div className="flex min-w-0 flex-col lg:sticky lg:top-0 lg:h-[min(100vh,64rem)] lg:self-start">
+        <div className="flex min-w-0 flex-col lg:sticky lg:top-0 lg:h-[calc(100vh-11.5rem)] lg:min-h-[40rem] lg:self-start">
           {content ? (
             <MapCanvas label={`Map of the mesh of ${state.design!.name}`} summary={mapSummary(state, sentence)} content={content} layers={layers} boundaryDrag={boundaryDrag} className="min-h-[22rem] flex-1">
               <MapLayers layers={layers} choices={{ ...CHOICES, ...(frame?.crs === 'lonlat-deg' && { land: 'Land' }) }} legend={legendOf(layers, result, model)} onChange={changeLayers} />
@@ -130,7 +130,7 @@ const Workbench = ({ session, state, isReadOnly }: Held & { isReadOnly: boolean 
             onDone={() => session.endGesture()}
           />
         </div>
-        <div className="border-line-strong bg-linen max-lg:border-t lg:border-l" role="group" aria-label="Recipe and check">
+        <div className="border-line-strong bg-linen max-lg:border-t lg:max-h-[calc(100vh-11.5rem)] lg:min-h-[40rem] lg:overflow-y-auto lg:border-l" role="group" aria-label="Recipe and check">
           <RecipeControls recipe={recipe} result={result} isReadOnly={isReadOnly} onChange={session.changeRecipe} onDone={session.endGesture} />
           <SelectionControls set={set} recipe={recipe} result={result} isReadOnly={isReadOnly} onChange={session.changeRecipe} onDone={session.endGesture} />
           <ModelControls model={model} isOwn={state.history!.present.correlation !== null} isReadOnly={isReadOnly} onChange={session.changeCorrelation} onDone={session.endGesture} />

@@ -22,10 +22,10 @@ interface MarginStripProps {
   onDone(): void;
 }
 
-const HEIGHT = 236;
+const HEIGHT = 190;
 const TOP = 14;
-const FLOOR = 168;
-const BAND = 26;
+const FLOOR = 136;
+const BAND = 24;
 const LEFT = 50;
 const RIGHT = 14;
 const MOST_KM = 20_000;
@@ -63,7 +63,7 @@ export const MarginStrip = (props: MarginStripProps) => {
   const curve = useMemo(() => effectCurve(model, corners === 'round' ? turning : 0, end / 200, end, 80), [model, turning, corners, end]);
   const low = 10 ** Math.floor(Math.log10(Math.min(model.tolerance / 8, 0.9 * (worst || 1), model.tolerance)));
   const yOf = (share: number): number => {
-    const t = (Math.log10(Math.max(share, low)) - Math.log10(low)) / (Math.log10(2) - Math.log10(low));
+    const t = (Math.log10(Math.max(share, low / 100)) - Math.log10(low)) / (Math.log10(2) - Math.log10(low));
     return FLOOR - 8 - Math.min(1, t) * (FLOOR - 8 - TOP);
   };
   const path = (values: number[]): string => values.map((value, k) => `${k === 0 ? 'M' : 'L'}${xOf(curve.at[k]).toFixed(1)} ${yOf(value).toFixed(1)}`).join('');
@@ -149,7 +149,7 @@ export const MarginStrip = (props: MarginStripProps) => {
           {needed.corner !== null && corners === 'round' && <Needed at={xOf(needed.corner)} y={yOf(model.tolerance)} isInside={needed.corner < end} colour="var(--walnut)" />}
           {worst !== null && (
             <g data-testid="margin-worst">
-              <circle cx={boundary} cy={yOf(worst)} r={5.5} fill="var(--linen-raised)" stroke="var(--madder)" strokeWidth={2.5} />
+              <circle cx={boundary} cy={Math.min(yOf(worst), FLOOR - 6)} r={5.5} fill="var(--linen-raised)" stroke="var(--madder)" strokeWidth={2.5} />
             </g>
           )}
 

@@ -22,8 +22,8 @@ export const ReadOuts = ({ result, model }: ReadOutsProps) => {
     return (
       <Figure
         key={kind}
-        label={kind === 'variance' ? 'Largest variance change' : 'Largest correlation change'}
-        note={isInForce ? `in force, limit ${formatPercent(tolerance)}` : 'for comparison'}
+        label={kind === 'variance' ? 'Variance change' : 'Correlation change'}
+        note={isInForce ? `largest; limit ${formatPercent(tolerance)}` : 'largest; to compare'}
         place={worst && { observations: [worst.observation] }}
         placeWords={worst && `at observation ${worst.observation}`}
         tone={isInForce && worst ? (isOver ? 'fail' : 'pass') : undefined}
@@ -40,11 +40,11 @@ export const ReadOuts = ({ result, model }: ReadOutsProps) => {
         label={steps === 2 ? 'Local h/l, 95 %' : 'Local h/D, 95 %'}
         note={figures?.coarseness ? `largest ${formatNumber(figures.coarseness.largest, 2)}` : ''}
         place={figures?.coarseness ? { nodes: [figures.coarseness.node] } : undefined}
-        placeWords="show the largest"
+        placeWords="show it"
       >
         {figures?.coarseness ? formatNumber(figures.coarseness.p95, 2) : '–'}
       </Figure>
-      <Figure label="Smallest angle" note="conditioning only" place={figures && { elements: [figures.smallestAngle.element] }} placeWords="show the element">
+      <Figure label="Smallest angle" note="for conditioning" place={figures && { elements: [figures.smallestAngle.element] }} placeWords="show it">
         {figures ? `${formatNumber(figures.smallestAngle.value)}°` : '–'}
       </Figure>
       {normalisation === 'exact' ? [effect('correlation'), effect('variance')] : [effect('variance'), effect('correlation')]}
@@ -64,7 +64,7 @@ interface FigureProps {
 }
 
 const Figure = ({ label, note, place, placeWords, tone, children }: FigureProps) => (
-  <div className="flex min-w-0 flex-col border-line px-4 py-2 not-first:border-l max-xl:border-b">
+  <div className="flex min-w-0 flex-col border-line px-3 py-1.5 not-first:border-l max-xl:border-b">
     <dt className="font-mono text-[0.6875rem] text-ink-soft">{label}</dt>
     <dd className={`font-mono text-lg leading-tight tabular-nums ${tone === 'fail' ? 'text-madder' : 'text-ink'}`}>
       {tone && <span aria-hidden="true" className={tone === 'fail' ? '' : 'text-lichen'}>{tone === 'fail' ? '✕ ' : '✓ '}</span>}
@@ -74,7 +74,7 @@ const Figure = ({ label, note, place, placeWords, tone, children }: FigureProps)
     <dd className="font-mono text-[0.6875rem] text-ink-soft">
       {note}
       {place && placeWords && (
-        <button type="button" className="block min-h-6 text-left text-woad underline underline-offset-2 hover:text-ink focus-visible:outline-2 focus-visible:outline-woad" onClick={() => showPlace(place)}>
+        <button type="button" className="block py-0.5 text-left text-woad underline underline-offset-2 hover:text-ink focus-visible:outline-2 focus-visible:outline-woad" onClick={() => showPlace(place)}>
           {placeWords}
         </button>
       )}

@@ -20,7 +20,7 @@ export const Section = ({ title, brief, isOpen = false, children }: SectionProps
   <details open={isOpen} className="group border-b border-line">
     <summary className="flex min-h-9 cursor-pointer list-none items-baseline gap-2 px-4 py-2 font-mono text-xs hover:bg-linen-sunk focus-visible:outline-2 focus-visible:-outline-offset-2 focus-visible:outline-woad">
       <span aria-hidden="true" className="inline-block w-2.5 text-ink-soft transition-transform group-open:rotate-90 motion-reduce:transition-none">›</span>
-      <span className="font-semibold text-ink">{title}</span>
+      <span className="shrink-0 font-semibold whitespace-nowrap text-ink">{title}</span>
       {brief && <span className="ml-auto truncate text-right text-ink-soft tabular-nums">{brief}</span>}
     </summary>
     <div className="flex flex-col gap-3 px-4 pt-1 pb-4">{children}</div>
