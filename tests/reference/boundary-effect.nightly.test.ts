@@ -15,4 +15,15 @@ describe('predicted variance excess against finite elements, all cases', () => {
     120_000,
   );
 });
-void compareCorrelation;
+
+// only where the prediction claims it: one side dominates, or two parallel ones from 1.5 D on
+describe('predicted correlation change against finite elements', () => {
+  it.each([['strip', 3, 1.5], ['strip', 4, 1.5], ['disc of 4 buffers, off centre', 10, 1], ['disc of 4 buffers, off centre', 10, 1.5], ['square corner of 120 degrees', 10, 1]] as const)(
+    '%s, m = %d, buffer %d D',
+    (name, steps, buffer) => {
+      const both = compareCorrelation(name, steps, buffer, 24);
+      expect(isClose(both), JSON.stringify(both)).toBe(true);
+    },
+    120_000,
+  );
+});

@@ -1,8 +1,10 @@
 /**
- * Prediction of the boundary effect at points of a mesh from its boundary alone, by rays: the excess of the variance is
- * the integral over all directions of h(r) (1 + k gain(r)) + h(r + r'), r being the first hit of the ray, k the
- * boundary's curvature there (times l) and r' the hit of the opposite ray. Exact for one straight side (images), for two
- * parallel ones up to the third reflection and at the centre of a disc; elsewhere an approximation.
+ * Prediction of the boundary effect at points of a mesh from its boundary alone: the ray sum of h(r) (1 + k gain(r)) +
+ * h(r + r'), r being the first hit of each ray, k the boundary's curvature there and r' the hit of the opposite ray, plus
+ * what it misses at corners. Exact: one straight side, one corner between straight sides, the centre of a disc.
+ * Approximate: everything else. Against finite elements on discs (observation at the centre and off it), strip, square
+ * and rounded corners of 30 to 150 degrees, re-entrant corner and holes of 0.3 D to 2 D, m = 2 to 10, buffers 1 D and
+ * 2.2 D, the largest error was 17 % of the value where it exceeded 0.1 percentage points.
  */
 import { NumericalError } from '#core/errors.ts';
 import type { BoundaryMesh, BoundarySegments } from './boundary-segments.ts';
@@ -11,11 +13,10 @@ import { spreadCurvature } from './spread-curvature.ts';
 import { largestComponent, straightComponentExcess } from './component-excess.ts';
 import { correlationChangeOf } from './correlation-change.ts';
 import type { EffectTables } from './effect-tables.ts';
-import { effectTables, lookUp } from './effect-tables.ts';
+import { TABLE_STEP, effectTables, lookUp } from './effect-tables.ts';
 import { RAYS, RAY_STEP, excessOfRays, rayX, rayY } from './ray-sum.ts';
 import { cornersOf, excessOfCorners } from './corner-excess.ts';
 import { largestOverShares } from './margin-effect.ts';
-import { maternCorrelation } from './matern.ts';
 import type { CorrelationModel } from './model.ts';
 import { resolveScale } from './scale.ts';
 
@@ -43,6 +44,7 @@ export function predictBoundaryEffect(mesh: BoundaryMesh, at: Float64Array, mode
   const corners = cornersOf(segments, mesh.crs === 'lonlat-deg');
   const frame = new Float64Array(9);
   const sweep = createSweep(mesh, segments, spread, tables, scaleKm);
+  const components = model.kind === 'vector' ? componentTable(model, tables) : null;
   const variance = new Float64Array(count);
   const correlation = new Float64Array(count);
   for (let i = 0; i < count; i++) {
@@ -50,26 +52,30 @@ export function predictBoundaryEffect(mesh: BoundaryMesh, at: Float64Array, mode
     writeFrame(at[2 * i], at[2 * i + 1], mesh.crs === 'lonlat-deg' ? mesh.radiusKm : 0, frame);
     const excess = Math.max(0, excessOfRays(tables, sweep.distance, sweep.curvature, scaleKm) + excessOfCorners(corners, tables, frame, scaleKm));
     correlation[i] = correlationChangeOf(model.steps, excess);
-    variance[i] = model.kind === 'vector' ? vectorVariance(model, excess) : excess;
+    variance[i] = components ? lookUp(components, straightDistance(tables.image, excess)) : excess;
   }
   return { variance, correlation };
 }
 
-function vectorVariance(model: CorrelationModel, excess: number): number {
-  const d = straightDistance(model.steps, excess);
-  return largestOverShares(model, (share) => largestComponent(straightComponentExcess(model.steps, d, share)));
+/** Larger magnitude of the components' changes for a straight side at distance i TABLE_STEP. */
+function componentTable(model: CorrelationModel, tables: EffectTables): Float64Array {
+  return Float64Array.from(tables.image, (_, i) =>
+    largestOverShares(model, (share) => largestComponent(straightComponentExcess(model.steps, i * TABLE_STEP, share))),
+  );
 }
 
 /** Distance in scales of the straight side whose excess c(2d) is the given one; 0 from 1 on. */
-function straightDistance(m: number, excess: number): number {
+function straightDistance(image: Float64Array, excess: number): number {
   let low = 0;
-  let high = 40 + 4 * m;
-  for (let k = 0; k < 40; k++) {
-    const middle = (low + high) / 2;
-    if (maternCorrelation(m, 2 * middle) > excess) low = middle;
+  let high = image.length - 1;
+  if (excess >= 1) return 0;
+  if (excess <= image[high]) return high * TABLE_STEP;
+  while (high - low > 1) {
+    const middle = (low + high) >> 1;
+    if (image[middle] > excess) low = middle;
     else high = middle;
   }
-  return (low + high) / 2;
+  return (low + (image[low] - excess) / (image[low] - image[high])) * TABLE_STEP;
 }
 
 /** Casts all rays of one point: `distance` (km, Infinity: nothing within reach) and `curvature` (1/km) of each first hit. */
