@@ -19,7 +19,9 @@ const difference = (a: SparseMatrix, b: number[][]) => {
 describe('element matrices', () => {
   const values = referenceValues('element-matrices');
 
-  it.each(values.triangles.map((t: any) => ({ name: t.name as string, t })))('agree with the closed form: $name', ({ t }: any) => {
+  const triangles: { name: string; t: any }[] = values.triangles.map((t: any) => ({ name: t.name, t }));
+
+  it.each(triangles)('agree with the closed form: $name', ({ t }) => {
     const vertices: number[][] = t.vertices_xyz ?? t.vertices.map((p: number[]) => [...p, 0]);
     const { mass, lumpedMass, stiffness } = assembleFromPositions(Float64Array.from(vertices.flat()), Uint32Array.of(0, 1, 2));
     expect(difference(mass, t.mass)).toBeLessThan(values.tolerance);
