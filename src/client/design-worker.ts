@@ -1,10 +1,12 @@
 import { NumericalError } from '#core/errors.ts';
 import { createRecipeRunner } from '#core/design/run-recipe.ts';
+import { localSpacing } from '#core/design/local-spacing.ts';
+import { unpackMesh } from '#core/formats/mesh-bundle.ts';
 import { unpackObservations } from '#core/formats/observation-bundle.ts';
 import { createDisplayProjection, frameOf } from '#client/map/display-projection.ts';
 
 import type { ComputeOptions } from './design/compute-design.ts';
-import { computeDesign, transferables } from './design/compute-design.ts';
+import { computeDesign, describeMesh, transferables } from './design/compute-design.ts';
 import type { WorkerAnswer, WorkerCommand } from './design/design-engine.ts';
 
 let options: ComputeOptions | null = null;
@@ -29,6 +31,18 @@ self.addEventListener('message', ({ data }: MessageEvent<WorkerCommand>) => {
       case 'build': {
         const result = computeDesign(data.request, options!);
         return answer({ answer: 'built', id: data.id, result }, [...transferables(result)]);
+      }
+      case 'open': {
+        const { mesh, selected } = unpackMesh(new Uint8Array(data.bytes));
+        const frame = frameOf(mesh.crs, selected.x, selected.y, data.model.sphereRadiusKm);
+        const result = describeMesh(mesh, selected, data.recipe, data.model, createDisplayProjection(frame), selected.exclusion.length);
+        return answer({ answer: 'opened', frame, result }, [...transferables(result)]);
+      }
+      case 'spacing': {
+        const columns = unpackObservations(new Uint8Array(data.bytes));
+        const { spacingKm, cells } = localSpacing(columns, data.frame.radiusKm, { withCells: true });
+        const drawn = cells ? { start: cells.start, positions: createDisplayProjection(data.frame).project(cells.coordinates) } : null;
+        return answer({ answer: 'spaced', spacingKm, cells: drawn });
       }
     }
   } catch (error) {

@@ -76,6 +76,22 @@ export const computeDesign = (request: DesignRequest, { runner, projection, rows
   const { recipe, model } = request;
   const { selected, mesh } = runner(recipe, { sphereRadiusKm: model.sphereRadiusKm, onPhase });
   onPhase('boundary effect', 0.92);
+  // the runner keeps its own arrays for the next run
+  const own = { ...mesh, localSpacingKm: mesh.localSpacingKm.slice(), outline: mesh.outline.map((ring) => ring.slice()) };
+  const shown = describeMesh(own, selected, recipe, model, projection, rows);
+  const cells = request.withCells ? spacingCells(selected, model.sphereRadiusKm, projection) : null;
+  return { ...shown, cells, milliseconds: now() - started };
+};
+
+/** Everything drawn or read out from a mesh; `rows` of its observation set, selected or not. */
+export const describeMesh = (
+  mesh: DesignedMesh,
+  selected: SelectedObservations,
+  recipe: Recipe,
+  model: CorrelationModel,
+  projection: DisplayProjection,
+  rows: number,
+): DesignResult => {
   const at = new Float64Array(2 * selected.x.length);
   for (let i = 0; i < selected.x.length; i++) {
     at[2 * i] = selected.x[i];
@@ -85,18 +101,18 @@ export const computeDesign = (request: DesignRequest, { runner, projection, rows
   const buffers = meshBuffers(mesh, projection);
   return {
     recipe,
-    // the runner keeps these for its next run
-    mesh: { ...mesh, localSpacingKm: mesh.localSpacingKm.slice(), outline: mesh.outline.map((ring) => ring.slice()) },
+    mesh,
     selected: { x: selected.x.slice(), y: selected.y.slice(), rowStart: selected.rowStart.slice(), rows: selected.rows.slice() },
     buffers,
     effect,
-    cells: request.withCells ? spacingCells(selected, model.sphereRadiusKm, projection) : null,
+    cells: null,
     figures: { ...meshFigures(mesh, model, buffers), rowsSelected: selected.rows.length, rows, variance: largest(effect.variance), correlation: largest(effect.correlation) },
-    milliseconds: now() - started,
+    milliseconds: 0,
   };
 };
 
-const spacingCells = (selected: SelectedObservations, radiusKm: number, projection: DisplayProjection): SpacingCells | null => {
+/** Cells of points, or null for points on one line. */
+export const spacingCells = (selected: Pick<SelectedObservations, 'crs' | 'x' | 'y'>, radiusKm: number, projection: DisplayProjection): SpacingCells | null => {
   const { cells } = localSpacing(selected, radiusKm, { withCells: true });
   return cells ? { start: cells.start, positions: projection.project(cells.coordinates) } : null;
 };

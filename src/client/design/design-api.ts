@@ -5,6 +5,7 @@ import type { Design } from '#schemas/designs.ts';
 import type { Job } from '#schemas/jobs.ts';
 import type { ObservationSet } from '#schemas/observation-sets.ts';
 import type { Study } from '#schemas/studies.ts';
+import type { Version } from '#schemas/versions.ts';
 
 /** What the designer changes of a design; `correlation` null: the study's model holds. */
 export interface Draft {
@@ -30,3 +31,6 @@ export const startSaveVersion = (designId: string, body: { revision: number; not
   send('POST', `/api/v1/designs/${designId}/versions`, body);
 export const getJob = (id: string): Promise<Job> => json(`/api/v1/jobs/${id}`);
 export const cancelJob = (id: string): Promise<Job> => send('POST', `/api/v1/jobs/${id}/cancel`, {});
+
+export const getVersion = (id: string): Promise<Version> => json(`/api/v1/versions/${id}`);
+export const getMeshBundle = async (id: string): Promise<ArrayBuffer> => (await apiFetch(`/api/v1/versions/${id}/mesh`)).arrayBuffer();

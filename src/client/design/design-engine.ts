@@ -1,16 +1,25 @@
 import type { DisplayFrame } from '#client/map/display-projection.ts';
 
-import type { DesignRequest, DesignResult } from './compute-design.ts';
+import type { CorrelationModel } from '#core/correlation/model.ts';
+import type { Recipe } from '#core/design/recipe.ts';
+
+import type { DesignRequest, DesignResult, SpacingCells } from './compute-design.ts';
 import { createLatestQueue } from './latest-queue.ts';
 
 export type WorkerCommand =
   | { command: 'load'; bytes: ArrayBuffer; sphereRadiusKm: number }
-  | { command: 'build'; id: number; request: DesignRequest };
+  | { command: 'build'; id: number; request: DesignRequest }
+  /** A stored mesh, described as if it had just been built. */
+  | { command: 'open'; bytes: ArrayBuffer; recipe: Recipe; model: CorrelationModel }
+  /** Local spacing of all rows of an observation set. */
+  | { command: 'spacing'; bytes: ArrayBuffer; frame: DisplayFrame };
 
 export type WorkerAnswer =
   | { answer: 'loaded'; frame: DisplayFrame; rows: number }
   | { answer: 'phase'; phase: string; fraction: number }
   | { answer: 'built'; id: number; result: DesignResult }
+  | { answer: 'opened'; frame: DisplayFrame; result: DesignResult }
+  | { answer: 'spaced'; spacingKm: Float64Array; cells: SpacingCells | null }
   | { answer: 'failed'; id: number; code: string; message: string; details: Record<string, unknown> };
 
 /** Why there is no mesh; `message` is for the person. */
@@ -36,9 +45,28 @@ export interface DesignEngine {
   destroy(): void;
 }
 
+const startWorker = (): Worker => new Worker(new URL('../design-worker.ts', import.meta.url), { type: 'module', name: 'design' });
+
+/** Sends one command to a worker of its own and resolves with the answer of that kind; rejects with the failure's message. */
+export const askWorker = <K extends WorkerAnswer['answer']>(command: WorkerCommand, kind: K, transfer: ArrayBuffer[] = []): Promise<Extract<WorkerAnswer, { answer: K }>> =>
+  new Promise((resolve, reject) => {
+    const worker = startWorker();
+    worker.addEventListener('message', ({ data }: MessageEvent<WorkerAnswer>) => {
+      if (data.answer !== kind && data.answer !== 'failed') return;
+      worker.terminate();
+      if (data.answer === kind) resolve(data as Extract<WorkerAnswer, { answer: K }>);
+      else if (data.answer === 'failed') reject(new Error(data.message));
+    });
+    worker.addEventListener('error', (event) => {
+      worker.terminate();
+      reject(new Error(`The worker stopped${event.message ? ` (${event.message})` : ''}.`));
+    });
+    worker.postMessage(command, transfer);
+  });
+
 /** Runs the design worker: one mesh at a time, the newest request next. */
 export const createDesignEngine = (events: EngineEvents): DesignEngine => {
-  const worker = new Worker(new URL('../design-worker.ts', import.meta.url), { type: 'module', name: 'design' });
+  const worker = startWorker();
   let finish: (() => void) | null = null;
   let id = 0;
 

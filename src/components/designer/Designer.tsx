@@ -1,23 +1,20 @@
 import { useCallback, useEffect, useMemo, useState } from 'react';
 
-import { effectInForce } from '#core/correlation/boundary-effect.ts';
 import { resolveScale } from '#core/correlation/scale.ts';
-import type { DesignResult } from '#client/design/compute-design.ts';
 import type { SessionState } from '#client/design/design-session.ts';
 import { isCheckOld, modelOf } from '#client/design/design-session.ts';
 import { roundBuffer } from '#client/design/margin-scale.ts';
-import { formatCount, formatKm, formatPercent, marginSentence } from '#client/design/words.ts';
+import { formatCount, formatKm, marginSentence } from '#client/design/words.ts';
+import { designContent } from '#client/map/design-content.ts';
 import type { LayerChoice } from '#client/map/map-scene.ts';
 import { mapStats } from '#client/map/map-stats.ts';
 import { MapCanvas } from '#components/map/MapCanvas.tsx';
-import type { Legend } from '#components/map/MapLayers.tsx';
 import { MapLayers } from '#components/map/MapLayers.tsx';
-import type { Correlation } from '#schemas/correlation.ts';
+import { legendOf } from '#components/map/legend.ts';
 
 import { CheckPanel } from './CheckPanel.tsx';
 import { ConflictPanel } from './ConflictPanel.tsx';
 import { DesignBar } from './DesignBar.tsx';
-import { designContent } from './design-content.ts';
 import { MarginStrip } from './MarginStrip.tsx';
 import { ModelControls } from './ModelControls.tsx';
 import { ReadOuts } from './ReadOuts.tsx';
@@ -163,16 +160,6 @@ const Failure = ({ state }: { state: SessionState }) => (
 const mapSummary = (state: SessionState, sentence: string): string => {
   const figures = state.result?.figures;
   return figures ? `${formatCount(figures.observations)} observations on a mesh of ${formatCount(figures.nodes)} nodes and ${formatCount(figures.elements)} elements. ${sentence}` : sentence;
-};
-
-const legendOf = (layers: LayerChoice, result: DesignResult | null, model: Correlation): Legend | null => {
-  if (layers.spacing && result?.cells) {
-    const sorted = result.mesh.localSpacingKm.slice().sort();
-    return { title: 'Local spacing', low: formatKm(sorted[0]), high: formatKm(sorted[Math.floor(0.98 * (sorted.length - 1))]) };
-  }
-  if (!layers.effect) return null;
-  const force = effectInForce(model, { variance: 1, correlation: 0 }) === 1 ? 'variance' : 'correlation';
-  return { title: `Boundary effect (${force})`, low: '0 %', high: formatPercent(model.tolerance), beyond: `beyond the limit` };
 };
 
 const useUndoKeys = (session: Held['session'], isReadOnly: boolean): void => {

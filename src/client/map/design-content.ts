@@ -1,11 +1,13 @@
 import type { DesignResult } from '#client/design/compute-design.ts';
 import { formatKm, formatPercent, formatPosition } from '#client/design/words.ts';
-import type { DisplayFrame } from '#client/map/display-projection.ts';
-import { createDisplayProjection } from '#client/map/display-projection.ts';
-import type { MapContent } from '#client/map/map-controller.ts';
-import type { CellBuffers, LayerChoice, PointBuffers } from '#client/map/map-scene.ts';
 import type { CorrelationModel } from '#core/correlation/model.ts';
 import { NODE_KIND } from '#core/geometry/mesh.ts';
+
+import type { DisplayFrame } from './display-projection.ts';
+import { createDisplayProjection } from './display-projection.ts';
+import type { MapContent } from './map-controller.ts';
+import type { CellBuffers, LayerChoice, PointBuffers } from './map-scene.ts';
+import { spacingCellBuffers } from './observation-content.ts';
 
 const KIND_WORDS: Record<number, string> = {
   [NODE_KIND.observation]: 'observation',
@@ -71,9 +73,7 @@ const pointsOf = (frame: DisplayFrame, result: DesignResult, values: Float64Arra
 const cellsOf = (cells: NonNullable<DesignResult['cells']>, spacingKm: Float64Array): CellBuffers => {
   const made = cellsCache.get(cells);
   if (made) return made;
-  const sorted = spacingKm.slice().sort();
-  const low = sorted[0], high = sorted[Math.floor(0.98 * (sorted.length - 1))];
-  const buffers = { ...cells, share: Float32Array.from(spacingKm, (km) => (high > low ? (km - low) / (high - low) : 0.5)) };
+  const buffers = spacingCellBuffers(cells, spacingKm);
   cellsCache.set(cells, buffers);
   return buffers;
 };
