@@ -104,7 +104,7 @@ export const createDesignSession = (designId: string): DesignSession => {
   };
 
   /** Cells depend on the selection alone: those of the result before are kept while it stays the same. */
-  const hasCellsOf = ({ selection }: Recipe): boolean => Boolean(state.result?.cells) && JSON.stringify(selection) === JSON.stringify(state.result.recipe.selection);
+  const hasCellsOf = ({ selection }: Recipe): boolean => state.result !== null && state.result.cells !== null && JSON.stringify(selection) === JSON.stringify(state.result.recipe.selection);
 
   const save = async (draft: Draft): Promise<SaveOutcome> => {
     const design = state.design!;
