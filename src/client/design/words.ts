@@ -11,6 +11,15 @@ export const formatPercent = (share: number): string => {
   return `${significant(percent, 2)} %`;
 };
 
+/** `formatPercent`, with as many digits as it takes to tell the value from the limit. */
+export const formatAgainst = (share: number, limit: number): string => {
+  for (let digits = 2; digits < 6; digits++) {
+    const text = `${significant(100 * share, digits)} %`;
+    if (text !== `${significant(100 * limit, digits)} %`) return formatPercent(share).startsWith('under') ? formatPercent(share) : text;
+  }
+  return formatPercent(share);
+};
+
 export const formatCount = (count: number): string => Math.round(count).toLocaleString('en-GB');
 
 /** "4.2 million", for products too long to read. */
@@ -48,5 +57,5 @@ export const marginSentence = (m: MarginFigures): string => {
   const [length, unit] = m.daleyKm === null ? [m.scaleKm, 'l'] : [m.daleyKm, 'D'];
   const buffer = `Buffer ${formatKm(m.bufferKm)} = ${significant(m.bufferKm / length, 2)} ${unit}.`;
   if (m.worst === null) return buffer;
-  return `${buffer} Largest boundary effect ${formatPercent(m.worst)} (limit ${formatPercent(m.tolerance)}), at observation ${m.observation}.`;
+  return `${buffer} Largest boundary effect ${formatAgainst(m.worst, m.tolerance)} (limit ${formatPercent(m.tolerance)}), at observation ${m.observation}.`;
 };

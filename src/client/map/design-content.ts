@@ -25,11 +25,13 @@ const cellsCache = new WeakMap<NonNullable<DesignResult['cells']>, CellBuffers>(
 export const designContent = (frame: DisplayFrame, result: DesignResult, model: CorrelationModel, layers: LayerChoice): MapContent => {
   const { mesh, buffers, effect, figures } = result;
   const force = model.normalisation === 'exact' ? 'correlation' : 'variance';
+  // one scale at a time
+  const isColoured = layers.effect && !layers.spacing;
   return {
     frame,
     mesh: buffers,
     triangles: mesh.triangles,
-    points: pointsOf(frame, result, layers.effect ? effect[force] : null, `${layers.effect ? force : 'plain'} ${model.tolerance}`, model.tolerance),
+    points: pointsOf(frame, result, isColoured ? effect[force] : null, `${isColoured ? force : 'plain'} ${model.tolerance}`, model.tolerance),
     cells: layers.spacing && result.cells ? cellsOf(result.cells, mesh.localSpacingKm) : null,
     limiting: figures[force].observation,
     pickable: buffers.positions,

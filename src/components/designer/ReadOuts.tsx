@@ -1,7 +1,7 @@
 import type { ReactNode } from 'react';
 
 import type { DesignResult } from '#client/design/compute-design.ts';
-import { formatCount, formatLarge, formatNumber, formatPercent } from '#client/design/words.ts';
+import { formatAgainst, formatCount, formatLarge, formatNumber, formatPercent } from '#client/design/words.ts';
 import type { Place } from '#client/map/place.ts';
 import { showPlace } from '#client/map/place.ts';
 import type { Correlation } from '#schemas/correlation.ts';
@@ -28,7 +28,7 @@ export const ReadOuts = ({ result, model }: ReadOutsProps) => {
         placeWords={worst && `at observation ${worst.observation}`}
         tone={isInForce && worst ? (isOver ? 'fail' : 'pass') : undefined}
       >
-        {worst ? formatPercent(worst.value) : '–'}
+        {worst ? (isInForce ? formatAgainst(worst.value, tolerance) : formatPercent(worst.value)) : '–'}
       </Figure>
     );
   };

@@ -122,7 +122,7 @@ export const MapCanvas = ({ label, summary, content, layers, boundaryDrag, class
         aria-roledescription="map"
         aria-label={label}
         aria-describedby={summaryId}
-        className="absolute inset-0 touch-none outline-offset-[-3px] focus-visible:outline-3 focus-visible:outline-woad"
+        className="absolute inset-0 touch-none outline-none after:pointer-events-none after:absolute after:inset-0 after:z-20 focus-visible:after:outline-3 focus-visible:after:-outline-offset-3 focus-visible:after:outline-woad"
       >
         <div aria-hidden="true" className="pointer-events-none absolute inset-0">
           {/* without a graphics processor smoothing costs half the frames */}

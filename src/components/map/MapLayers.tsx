@@ -21,20 +21,30 @@ interface MapLayersProps {
 }
 
 /** Switches of the map's layers and the legend of the colour scale in use. */
-export const MapLayers = ({ layers, choices, legend, onChange }: MapLayersProps) => (
-  <fieldset className="absolute top-3 left-3 max-w-60 border border-line-strong bg-linen-raised/95 px-3 pt-1 pb-2 font-mono text-xs text-ink">
-    <legend className="sr-only">Map layers</legend>
-    <div className="flex flex-col">
-      {(Object.entries(choices) as [keyof LayerChoice, string][]).map(([name, words]) => (
-        <label key={name} className="flex min-h-6 items-center gap-2">
-          <input type="checkbox" className="accent-woad" checked={layers[name]} onChange={({ target }) => onChange({ ...layers, [name]: target.checked })} />
-          {words}
-        </label>
-      ))}
-    </div>
-    {legend && <ScaleLegend {...legend} />}
-  </fieldset>
-);
+export const MapLayers = ({ layers, choices, legend, onChange }: MapLayersProps) => {
+  // on a narrow screen the panel would hide the map
+  const [isOpen, setIsOpen] = useState(() => window.innerWidth >= 640);
+  return (
+    <details open={isOpen} onToggle={({ currentTarget }) => setIsOpen(currentTarget.open)} className="group absolute top-3 left-3 max-w-60 border border-line-strong bg-linen-raised/95 font-mono text-xs text-ink">
+      <summary className="flex min-h-8 cursor-pointer list-none items-center gap-2 px-3 hover:bg-linen-sunk focus-visible:outline-2 focus-visible:outline-woad">
+        <span aria-hidden="true" className="inline-block w-2.5 text-ink-soft transition-transform group-open:rotate-90 motion-reduce:transition-none">›</span>
+        Layers
+      </summary>
+      <fieldset className="px-3 pb-2">
+        <legend className="sr-only">Map layers</legend>
+        <div className="flex flex-col">
+          {(Object.entries(choices) as [keyof LayerChoice, string][]).map(([name, words]) => (
+            <label key={name} className="flex min-h-6 items-center gap-2">
+              <input type="checkbox" className="accent-woad" checked={layers[name]} onChange={({ target }) => onChange({ ...layers, [name]: target.checked })} />
+              {words}
+            </label>
+          ))}
+        </div>
+        {legend && <ScaleLegend {...legend} />}
+      </fieldset>
+    </details>
+  );
+};
 
 const ScaleLegend = ({ title, low, high, beyond }: Legend) => {
   const [gradient, setGradient] = useState(() => scaleGradient(readThemeColours().scale));
@@ -46,7 +56,7 @@ const ScaleLegend = ({ title, low, high, beyond }: Legend) => {
     <div className="mt-1.5 border-t border-line pt-1.5">
       <div>{title}</div>
       <div className="mt-1 h-2.5 border border-line-strong" style={{ backgroundImage: gradient }} />
-      <div className="flex justify-between tabular-nums">
+      <div className="flex justify-between gap-4 tabular-nums">
         <span>{low}</span>
         <span>{high}</span>
       </div>
