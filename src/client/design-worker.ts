@@ -7,14 +7,40 @@ import { createDisplayProjection, frameOf } from '#client/map/display-projection
 
 import type { ComputeOptions } from './design/compute-design.ts';
 import { computeDesign, describeMesh, transferables } from './design/compute-design.ts';
+import { createLatestTask } from './design/latest-task.ts';
 import type { WorkerAnswer, WorkerCommand } from './design/design-engine.ts';
 
 let options: ComputeOptions | null = null;
 
 const answer = (message: WorkerAnswer, transfer: ArrayBuffer[] = []): void => self.postMessage(message, { transfer });
 
-self.addEventListener('message', ({ data }: MessageEvent<WorkerCommand>) => {
+const build = createLatestTask<Extract<WorkerCommand, { command: 'build' }>>(
+  ({ id, request }) =>
+    attempt(id, () => {
+      const result = computeDesign(request, options!);
+      answer({ answer: 'built', id, result }, [...transferables(result)]);
+    }),
+  (task) => setTimeout(task, 0),
+);
+
+const attempt = (id: number, work: () => void): void => {
   try {
+    work();
+  } catch (error) {
+    const known = error instanceof NumericalError;
+    answer({
+      answer: 'failed',
+      id,
+      code: known ? error.code : 'UNEXPECTED',
+      message: known ? error.message : `The mesh could not be built (${String(error)}). The recipe is kept; change it or reload the page.`,
+      details: known ? error.details : {},
+    });
+  }
+};
+
+self.addEventListener('message', ({ data }: MessageEvent<WorkerCommand>) => {
+  if (data.command === 'build') return build(data);
+  attempt(0, () => {
     switch (data.command) {
       case 'load': {
         const columns = unpackObservations(new Uint8Array(data.bytes));
@@ -27,10 +53,6 @@ self.addEventListener('message', ({ data }: MessageEvent<WorkerCommand>) => {
           now: () => performance.now(),
         };
         return answer({ answer: 'loaded', frame, rows: columns.x.length });
-      }
-      case 'build': {
-        const result = computeDesign(data.request, options!);
-        return answer({ answer: 'built', id: data.id, result }, [...transferables(result)]);
       }
       case 'open': {
         const { mesh, selected } = unpackMesh(new Uint8Array(data.bytes));
@@ -45,14 +67,5 @@ self.addEventListener('message', ({ data }: MessageEvent<WorkerCommand>) => {
         return answer({ answer: 'spaced', spacingKm, cells: drawn });
       }
     }
-  } catch (error) {
-    const known = error instanceof NumericalError;
-    answer({
-      answer: 'failed',
-      id: data.command === 'build' ? data.id : 0,
-      code: known ? error.code : 'UNEXPECTED',
-      message: known ? error.message : `The mesh could not be built (${String(error)}). The recipe is kept; change it or reload the page.`,
-      details: known ? error.details : {},
-    });
-  }
+  });
 });

@@ -4,7 +4,6 @@ import type { CorrelationModel } from '#core/correlation/model.ts';
 import type { Recipe } from '#core/design/recipe.ts';
 
 import type { DesignRequest, DesignResult, SpacingCells } from './compute-design.ts';
-import { createLatestQueue } from './latest-queue.ts';
 
 export type WorkerCommand =
   | { command: 'load'; bytes: ArrayBuffer; sphereRadiusKm: number }
@@ -32,7 +31,8 @@ export interface DesignFailure {
 export interface EngineEvents {
   onLoaded(frame: DisplayFrame, rows: number): void;
   onPhase(phase: string, fraction: number): void;
-  onResult(result: DesignResult): void;
+  /** `isNewest`: nothing else was asked for since. */
+  onResult(result: DesignResult, isNewest: boolean): void;
   onFailure(failure: DesignFailure): void;
   onIdle(): void;
 }
@@ -40,7 +40,7 @@ export interface EngineEvents {
 export interface DesignEngine {
   /** Hands the observation bundle over to the worker; `bytes` is not usable afterwards. */
   load(bytes: ArrayBuffer, sphereRadiusKm: number): void;
-  /** Asks for a mesh; of several asked for while one is being built, only the last is built. */
+  /** Asks for a mesh; of those asked for while one is being built, only the last is built next. */
   request(request: DesignRequest): void;
   destroy(): void;
 }
@@ -64,24 +64,13 @@ export const askWorker = <K extends WorkerAnswer['answer']>(command: WorkerComma
     worker.postMessage(command, transfer);
   });
 
-/** Runs the design worker: one mesh at a time, the newest request next. */
+/**
+ * Runs the design worker: it finishes the mesh in hand and goes on with the newest request. Requests are posted at once,
+ * so that the worker never waits for a page that is busy drawing.
+ */
 export const createDesignEngine = (events: EngineEvents): DesignEngine => {
   const worker = startWorker();
-  let finish: (() => void) | null = null;
-  let id = 0;
-
-  const done = (): void => {
-    finish?.();
-    finish = null;
-  };
-  const queue = createLatestQueue<DesignRequest>(
-    (request) =>
-      new Promise<void>((resolve) => {
-        finish = resolve;
-        worker.postMessage({ command: 'build', id: ++id, request } satisfies WorkerCommand);
-      }),
-    () => events.onIdle(),
-  );
+  let newest = 0;
 
   worker.addEventListener('message', ({ data }: MessageEvent<WorkerAnswer>) => {
     switch (data.answer) {
@@ -90,24 +79,24 @@ export const createDesignEngine = (events: EngineEvents): DesignEngine => {
       case 'phase':
         return events.onPhase(data.phase, data.fraction);
       case 'built':
-        events.onResult(data.result);
-        return done();
+        events.onResult(data.result, data.id === newest);
+        break;
       case 'failed':
         events.onFailure(data);
-        return done();
+        break;
+      default:
+        return;
     }
+    if (data.id === newest) events.onIdle();
   });
   worker.addEventListener('error', (event) => {
     events.onFailure({ code: 'WORKER_FAILED', message: `The mesh worker stopped${event.message ? ` (${event.message})` : ''}. The recipe is kept; reload the page to go on.`, details: {} });
-    done();
+    events.onIdle();
   });
 
   return {
     load: (bytes, sphereRadiusKm) => worker.postMessage({ command: 'load', bytes, sphereRadiusKm } satisfies WorkerCommand, [bytes]),
-    request: (request) => queue.push(request),
-    destroy() {
-      queue.clear();
-      worker.terminate();
-    },
+    request: (request) => worker.postMessage({ command: 'build', id: ++newest, request } satisfies WorkerCommand),
+    destroy: () => worker.terminate(),
   };
 };

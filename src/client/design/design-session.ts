@@ -156,10 +156,10 @@ export const createDesignSession = (designId: string): DesignSession => {
           // during a drag the phases would only flicker
           if (!state.result) set({ buildPhase: phase });
         },
-        onResult(result) {
+        onResult(result, isNewest) {
           const cells = result.cells ?? (hasCellsOf(result.recipe) ? state.result!.cells : null);
           set({ result: { ...result, cells }, failure: null });
-          if (withCells && !cells) build();
+          if (withCells && !cells && isNewest) build();
         },
         onFailure: (failure) => set({ failure, isBuilding: false }),
         onIdle: () => set({ isBuilding: false }),

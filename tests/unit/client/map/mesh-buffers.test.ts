@@ -50,7 +50,7 @@ describe('display projection', () => {
 });
 
 describe('boundary drag', () => {
-  const square = Float64Array.from([0, 0, 10, 0, 10, 0, 10, 10, 10, 10, 0, 10, 0, 10, 0, 0]);
+  const square = Float32Array.from([0, 0, 10, 0, 10, 0, 10, 10, 10, 10, 0, 10, 0, 10, 0, 0]);
   it('measures from the outline: outwards positive, inwards negative, about corners along arcs', () => {
     expect(distanceOutside(15, 5, square)).toBeCloseTo(5, 12);
     expect(distanceOutside(13, 14, square)).toBeCloseTo(5, 12);
