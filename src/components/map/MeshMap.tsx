@@ -22,7 +22,7 @@ interface Opened {
 }
 
 /** The mesh of a version. `#show=elements:1,2` in the address, or the event `selvage:show`, flies to a place. */
-export const MeshMap = ({ versionId, className = 'h-[32rem]' }: { versionId: string; className?: string }) => {
+export const MeshMap = ({ versionId, className = 'h-full min-h-64' }: { versionId: string; className?: string }) => {
   const [opened, setOpened] = useState<Opened | null>(null);
   const [problem, setProblem] = useState('');
   const [layers, setLayers] = useState<LayerChoice>({ elements: true, observations: true, spacing: false, effect: true, land: true });

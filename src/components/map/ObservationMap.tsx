@@ -37,7 +37,7 @@ interface ObservationMapProps {
 }
 
 /** All rows of an observation set on a quiet map, with their local spacing as a layer. */
-export const ObservationMap = ({ observationSetId, sphereRadiusKm = 6371, className = 'h-[32rem]' }: ObservationMapProps) => {
+export const ObservationMap = ({ observationSetId, sphereRadiusKm = 6371, className = 'h-full min-h-64' }: ObservationMapProps) => {
   const [opened, setOpened] = useState<Opened | null>(null);
   const [spacing, setSpacing] = useState<Spacing | null>(null);
   const [problem, setProblem] = useState('');
