@@ -1,6 +1,6 @@
 import { type CreationOptional, DataTypes, type InferAttributes, type InferCreationAttributes, Model, type Sequelize } from 'sequelize';
 
-import type { Recipe } from '#core/design/recipe.ts';
+import type { RecipeInput } from '#schemas/recipe.ts';
 import type { Correlation } from '#schemas/correlation.ts';
 
 /** A design: a recipe on an observation set, changed until it is saved as a version. */
@@ -10,7 +10,7 @@ export class DesignRow extends Model<InferAttributes<DesignRow>, InferCreationAt
   declare studyId: string;
   declare observationSetId: string;
   declare name: string;
-  declare recipe: Recipe;
+  declare recipe: RecipeInput;
   declare correlation: Correlation | null;
   /** Counts up with every change: the optimistic lock. */
   declare revision: CreationOptional<number>;

@@ -1,6 +1,6 @@
 import { type CreationOptional, DataTypes, type InferAttributes, type InferCreationAttributes, Model, type Sequelize } from 'sequelize';
 
-import type { Recipe } from '#core/design/recipe.ts';
+import type { RecipeInput } from '#schemas/recipe.ts';
 import type { Correlation } from '#schemas/correlation.ts';
 import type { CheckFigures, Finding } from '#schemas/findings.ts';
 
@@ -14,7 +14,7 @@ export class MeshVersion extends Model<InferAttributes<MeshVersion>, InferCreati
   declare observationSetId: string;
   declare observationSha256: string;
   declare number: number;
-  declare recipe: Recipe;
+  declare recipe: RecipeInput;
   declare correlation: Correlation;
   declare findings: Finding[];
   declare figures: CheckFigures;

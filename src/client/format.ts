@@ -14,7 +14,7 @@ export const formatCount = (value: number): string => numberFormat({ maximumFrac
 export const formatFigure = (value: number, digits = 3): string => {
   if (value === 0) return '0';
   const size = Math.abs(value);
-  if (size < 1e-4 || size >= 1e9) return value.toExponential(Math.max(0, digits - 1)).replace('e+', 'e');
+  if (size < 1e-4 || size >= 1e9) return value.toExponential(Math.max(0, digits - 1)).replace(/\.?0*e\+?/, 'e');
   return numberFormat({ maximumSignificantDigits: Math.max(digits, size >= 1 ? Math.ceil(Math.log10(size + 1)) : digits) }).format(value);
 };
 

@@ -65,7 +65,7 @@ const main = async (): Promise<void> => {
 };
 
 main().catch((error: unknown) => {
-  if (error instanceof EnvError) console.error(error.message);
+  if (error instanceof EnvError) process.stderr.write(`${error.message}\n`);
   else log.fatal({ err: error }, 'The worker could not start');
   process.exit(1);
 });
