@@ -5,12 +5,15 @@ import { unpackMesh } from '#core/formats/mesh-bundle.ts';
 import { unpackObservations } from '#core/formats/observation-bundle.ts';
 import { createDisplayProjection, frameOf } from '#client/map/display-projection.ts';
 
-import type { ComputeOptions } from './design/compute-design.ts';
+import type { ComputeOptions, DesignRequest } from './design/compute-design.ts';
 import { computeDesign, describeMesh, transferables } from './design/compute-design.ts';
 import { createLatestTask } from './design/latest-task.ts';
 import type { WorkerAnswer, WorkerCommand } from './design/design-engine.ts';
 
 let options: ComputeOptions | null = null;
+let rehearsals = 5;
+/** A build was asked for since the first one. */
+let isWanted = false;
 
 const answer = (message: WorkerAnswer, transfer: ArrayBuffer[] = []): void => self.postMessage(message, { transfer });
 
@@ -19,9 +22,21 @@ const build = createLatestTask<Extract<WorkerCommand, { command: 'build' }>>(
     attempt(id, () => {
       const result = computeDesign(request, options!);
       answer({ answer: 'built', id, result }, [...transferables(result)]);
+      rehearse(request);
     }),
   (task) => setTimeout(task, 0),
 );
+
+/** Code is fast only once the engine has compiled it: a few runs that nobody waits for make the first drag a smooth one. */
+const rehearse = (request: DesignRequest): void => {
+  if (rehearsals === 0) return;
+  rehearsals--;
+  setTimeout(() => {
+    if (isWanted) return;
+    computeDesign(request, { ...options!, onPhase: () => {} });
+    rehearse(request);
+  }, 60);
+};
 
 const attempt = (id: number, work: () => void): void => {
   try {
@@ -39,7 +54,10 @@ const attempt = (id: number, work: () => void): void => {
 };
 
 self.addEventListener('message', ({ data }: MessageEvent<WorkerCommand>) => {
-  if (data.command === 'build') return build(data);
+  if (data.command === 'build') {
+    isWanted = data.id > 1;
+    return build(data);
+  }
   attempt(0, () => {
     switch (data.command) {
       case 'load': {

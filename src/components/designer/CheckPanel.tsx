@@ -1,4 +1,4 @@
-import { useEffect, useState } from 'react';
+import { memo, useEffect, useState } from 'react';
 
 import type { CheckState } from '#client/design/design-session.ts';
 import { formatCount, formatElapsed, formatNumber } from '#client/design/words.ts';
@@ -32,7 +32,7 @@ const GROUPS: [Finding['group'], string][] = [
 ];
 
 /** The server's judgement of the design, and the way to a version. */
-export const CheckPanel = ({ check, isOld, isReadOnly, onCheck, onCancel, onSave }: CheckPanelProps) => {
+export const CheckPanel = memo(({ check, isOld, isReadOnly, onCheck, onCancel, onSave }: CheckPanelProps) => {
   const { job, result } = check;
   const isRunning = job !== null && (job.state === 'queued' || job.state === 'running');
   return (
@@ -53,7 +53,8 @@ export const CheckPanel = ({ check, isOld, isReadOnly, onCheck, onCancel, onSave
       {result && <Findings findings={result.findings} canShow={!isOld} />}
     </section>
   );
-};
+});
+CheckPanel.displayName = 'CheckPanel';
 
 interface ProgressProps {
   phase: string;

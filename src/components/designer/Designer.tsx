@@ -80,6 +80,7 @@ const Workbench = ({ session, state, isReadOnly }: Held & { isReadOnly: boolean 
     },
     [session],
   );
+  const openDialog = useCallback((): void => setIsSaving(true), []);
   useUndoKeys(session, isReadOnly);
   useEffect(() => void mapStats().commits++);
 
@@ -129,9 +130,9 @@ const Workbench = ({ session, state, isReadOnly }: Held & { isReadOnly: boolean 
         </div>
         <div className="border-line-strong bg-linen max-lg:border-t lg:max-h-[calc(100vh-11.5rem)] lg:min-h-[40rem] lg:overflow-y-auto lg:border-l" role="group" aria-label="Recipe and check">
           <RecipeControls recipe={recipe} result={result} isReadOnly={isReadOnly} onChange={session.changeRecipe} onDone={session.endGesture} />
-          <SelectionControls set={set} recipe={recipe} result={result} isReadOnly={isReadOnly} onChange={session.changeRecipe} onDone={session.endGesture} />
+          <SelectionControls set={set} selection={recipe.selection} brief={result ? `${formatCount(result.figures.observations)} of ${formatCount(result.figures.rows)} rows` : ''} isReadOnly={isReadOnly} onChange={session.changeRecipe} onDone={session.endGesture} />
           <ModelControls model={model} isOwn={state.history!.present.correlation !== null} isReadOnly={isReadOnly} onChange={session.changeCorrelation} onDone={session.endGesture} />
-          <CheckPanel check={state.check} isOld={isOld} isReadOnly={isReadOnly} onCheck={() => void session.startCheck()} onCancel={() => void session.cancelCheck()} onSave={() => setIsSaving(true)} />
+          <CheckPanel check={state.check} isOld={isOld} isReadOnly={isReadOnly} onCheck={session.startCheck} onCancel={session.cancelCheck} onSave={openDialog} />
         </div>
       </div>
       {isSaving && (

@@ -1,3 +1,5 @@
+import { memo } from 'react';
+
 import { resolveScale } from '#core/correlation/scale.ts';
 import type { Correlation } from '#schemas/correlation.ts';
 import { formatKm, formatPercent } from '#client/design/words.ts';
@@ -15,7 +17,7 @@ interface ModelControlsProps {
 }
 
 /** The correlation model: the study's, until the design is given its own. */
-export const ModelControls = ({ model, isOwn, isReadOnly, onChange, onDone }: ModelControlsProps) => {
+export const ModelControls = memo(({ model, isOwn, isReadOnly, onChange, onDone }: ModelControlsProps) => {
   const { scaleKm, daleyKm } = resolveScale(model);
   const length = daleyKm === null ? `l ${formatKm(scaleKm)}` : `D ${formatKm(daleyKm)}`;
   const change = (part: Partial<Correlation>, gesture?: string): void => onChange({ ...model, ...part }, gesture);
@@ -64,4 +66,5 @@ export const ModelControls = ({ model, isOwn, isReadOnly, onChange, onDone }: Mo
       </p>
     </Section>
   );
-};
+});
+ModelControls.displayName = 'ModelControls';

@@ -1,32 +1,30 @@
-import { useId, useState } from 'react';
+import { memo, useId, useState } from 'react';
 
 import type { Recipe, Selection } from '#core/design/recipe.ts';
 import { readRing, writeRing } from '#client/design/polygon-text.ts';
 import { formatCount, formatKm } from '#client/design/words.ts';
-import type { DesignResult } from '#client/design/compute-design.ts';
 import type { ObservationSet } from '#schemas/observation-sets.ts';
 
 import { Choice, NumberField, Section } from './fields.tsx';
 
 interface SelectionControlsProps {
   set: ObservationSet;
-  recipe: Recipe;
-  result: DesignResult | null;
+  selection: Selection;
+  /** How many observations come of how many rows. */
+  brief: string;
   isReadOnly: boolean;
   onChange(change: Partial<Recipe>, gesture?: string): void;
   onDone(): void;
 }
 
 /** Which observations take part, and what happens to near ones. */
-export const SelectionControls = ({ set, recipe, result, isReadOnly, onChange, onDone }: SelectionControlsProps) => {
-  const { selection } = recipe;
+export const SelectionControls = memo(({ set, selection, brief, isReadOnly, onChange, onDone }: SelectionControlsProps) => {
   const change = (part: Partial<Selection>, gesture?: string): void => {
     const next = { ...selection, ...part };
     for (const key of Object.keys(next) as (keyof Selection)[]) if (next[key] === undefined) delete next[key];
     onChange({ selection: next }, gesture);
   };
   const { near } = selection;
-  const brief = result ? `${formatCount(result.figures.observations)} of ${formatCount(result.figures.rows)} rows` : undefined;
   return (
     <>
       <Section title="Observations used" brief={brief}>
@@ -61,7 +59,8 @@ export const SelectionControls = ({ set, recipe, result, isReadOnly, onChange, o
       </Section>
     </>
   );
-};
+});
+SelectionControls.displayName = 'SelectionControls';
 
 const levelOf = (min: number | null, max: number | null, range: { min: number; max: number }): Selection['level'] =>
   min === null && max === null ? undefined : { min: min ?? range.min, max: max ?? range.max };
@@ -85,8 +84,8 @@ const Flags = ({ all, kept, isReadOnly, onChange }: FlagsProps) => {
       <legend className="mb-1 font-mono text-xs text-ink">Quality flags to keep</legend>
       <div className="max-h-40 overflow-y-auto" tabIndex={all.length > 6 ? 0 : undefined}>
         {all.map(({ name, count }) => (
-          <label key={name} className="flex min-h-6 items-center gap-2 font-mono text-xs text-ink">
-            <input type="checkbox" className="accent-woad" checked={kept?.includes(name) ?? true} disabled={isReadOnly} onChange={() => toggle(name)} />
+          <label key={name} className="flex min-h-7 items-center gap-2 font-mono text-xs text-ink">
+            <input type="checkbox" className="size-4 accent-woad" checked={kept?.includes(name) ?? true} disabled={isReadOnly} onChange={() => toggle(name)} />
             <span>{name === '' ? '(no flag)' : name}</span>
             <span className="ml-auto text-ink-soft tabular-nums">{formatCount(count)}</span>
           </label>

@@ -34,8 +34,8 @@ export const MapLayers = ({ layers, choices, legend, onChange }: MapLayersProps)
         <legend className="sr-only">Map layers</legend>
         <div className="flex flex-col">
           {(Object.entries(choices) as [keyof LayerChoice, string][]).map(([name, words]) => (
-            <label key={name} className="flex min-h-6 items-center gap-2">
-              <input type="checkbox" className="accent-woad" checked={layers[name]} onChange={({ target }) => onChange({ ...layers, [name]: target.checked })} />
+            <label key={name} className="flex min-h-7 items-center gap-2">
+              <input type="checkbox" className="size-4 accent-woad" checked={layers[name]} onChange={({ target }) => onChange({ ...layers, [name]: target.checked })} />
               {words}
             </label>
           ))}
