@@ -1,4 +1,4 @@
-import { useEffect, useState } from 'react';
+import { useEffect, useLayoutEffect, useRef, useState } from 'react';
 
 import { scaleGradient } from '#client/map/colour-scale.ts';
 import type { LayerChoice } from '#client/map/map-scene.ts';
@@ -22,10 +22,14 @@ interface MapLayersProps {
 
 /** Switches of the map's layers and the legend of the colour scale in use. */
 export const MapLayers = ({ layers, choices, legend, onChange }: MapLayersProps) => {
-  // on a narrow screen the panel would hide the map
-  const [isOpen, setIsOpen] = useState(() => window.innerWidth >= 640);
+  const panel = useRef<HTMLDetailsElement>(null);
+  const [isOpen, setIsOpen] = useState(false);
+  useLayoutEffect(() => {
+    // on a small map the panel would hide what it is about
+    setIsOpen((panel.current?.parentElement?.clientWidth ?? 0) >= 560);
+  }, []);
   return (
-    <details open={isOpen} onToggle={({ currentTarget }) => setIsOpen(currentTarget.open)} className="group absolute top-3 left-3 max-w-60 border border-line-strong bg-linen-raised/95 font-mono text-xs text-ink">
+    <details ref={panel} open={isOpen} onToggle={({ currentTarget }) => setIsOpen(currentTarget.open)} className="group absolute top-3 left-3 max-w-60 border border-line-strong bg-linen-raised/95 font-mono text-xs text-ink">
       <summary className="flex min-h-8 cursor-pointer list-none items-center gap-2 px-3 hover:bg-linen-sunk focus-visible:outline-2 focus-visible:outline-woad">
         <span aria-hidden="true" className="inline-block w-2.5 text-ink-soft transition-transform group-open:rotate-90 motion-reduce:transition-none">›</span>
         Layers
