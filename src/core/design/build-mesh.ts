@@ -62,6 +62,8 @@ export const meshPrepared = (prepared: PreparedObservations, recipe: Recipe, opt
 
   options.onPhase?.('boundary', 0.1);
   const edgeKm = Math.min(coreSpacingKm + slope * recipe.bufferKm, BOUNDARY_SHARE * recipe.bufferKm);
+  // the boundary is no shorter than the outline: refuse before anything is laid out
+  if (domain.perimeterKm / edgeKm > MAX_NODES) throw tooLarge(domain.perimeterKm / edgeKm);
   const boundary = domain.buffer(recipe.bufferKm, edgeKm, recipe.corners);
   if (count + boundary.boundary.length / 2 > MAX_NODES) throw tooLarge(boundary.boundary.length / 2);
 

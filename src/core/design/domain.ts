@@ -3,7 +3,7 @@ import { convexHull } from '#core/geometry/convex-hull.ts';
 import { cosDegrees, degrees, atan2 } from '#core/geometry/deterministic-math.ts';
 import type { BufferedOutline, DistanceOutside } from '#core/geometry/plane-outline.ts';
 import { bufferPlane, distanceOutsidePlane } from '#core/geometry/plane-outline.ts';
-import { writeLonLat, writeUnitVector } from '#core/geometry/sphere.ts';
+import { greatCircleKm, writeLonLat, writeUnitVector } from '#core/geometry/sphere.ts';
 import { bufferSphere, distanceOutsideSphere } from '#core/geometry/sphere-outline.ts';
 import type { Stereographic } from '#core/geometry/stereographic.ts';
 import { createStereographicFrame } from '#core/geometry/stereographic.ts';
@@ -20,6 +20,8 @@ export interface Domain {
   outline: Float64Array;
   /** Corners as in `outline`; `turning` is filled from the buffer. */
   corners: OutlineCorner[];
+  /** Length of the outline on the ground, km. */
+  perimeterKm: number;
   distanceOutside: DistanceOutside;
   buffer(bufferKm: number, edgeKm: number, corners: 'round' | 'square'): BufferedOutline;
 }
@@ -63,6 +65,15 @@ const cornersOf = (outline: Float64Array, observations: ArrayLike<number> | null
     y: outline[2 * i + 1],
     turning: 0,
   }));
+
+const perimeterOf = (ring: Float64Array, distance: (ax: number, ay: number, bx: number, by: number) => number): number => {
+  let sum = 0;
+  for (let k = 0; k < ring.length; k += 2) {
+    const next = (k + 2) % ring.length;
+    sum += distance(ring[k], ring[k + 1], ring[next], ring[next + 1]);
+  }
+  return sum;
+};
 
 interface Ring {
   /** 2 per corner, in the coordinates of the points. */
@@ -110,6 +121,7 @@ const planeDomain = (selected: SelectedObservations, outline: Outline): Domain =
     projection: null,
     outline: ring,
     corners,
+    perimeterKm: perimeterOf(ring, (ax, ay, bx, by) => Math.sqrt((bx - ax) ** 2 + (by - ay) ** 2)),
     distanceOutside: distanceOutsidePlane(ring),
     buffer: (bufferKm, edgeKm, kind) => withTurning(bufferPlane(ring, bufferKm, edgeKm, kind), corners),
   };
@@ -200,6 +212,7 @@ const sphereDomain = (selected: SelectedObservations, outline: Outline, radiusKm
     projection,
     outline: outlineRing,
     corners,
+    perimeterKm: perimeterOf(outlineRing, (ax, ay, bx, by) => greatCircleKm(ax, ay, bx, by, radiusKm)),
     distanceOutside: distanceOutsideSphere(ring, radiusKm, projection),
     buffer: (bufferKm, edgeKm, kind) => {
       const reach = widest + degrees(bufferKm / radiusKm) * (kind === 'square' ? 1.42 : 1);

@@ -17,7 +17,7 @@ export interface PointGrid {
  * apart, a look-up costs a bounded number of comparisons.
  */
 export const createPointGrid = (points: Float64Array, reach: number, capacity: number, isFlat: boolean): PointGrid => {
-  const mask = 2 ** Math.max(4, Math.ceil(Math.log2(capacity + 1)) + 1) - 1;
+  const mask = 2 ** Math.max(4, 33 - Math.clz32(capacity)) - 1;
   const head = new Int32Array(mask + 1).fill(-1);
   const next = new Int32Array(points.length / 3);
   const reach2 = reach * reach;

@@ -16,6 +16,9 @@ export type DistanceOutside = (x: number, y: number) => number;
 /** Longest step along an arc, radians: chords then stay within 0.5 % of the radius. */
 export const ARC_STEP = 0.2;
 
+/** A corner whose arc is shorter than this share of a boundary edge becomes one vertex: shorter edges would need tiny elements. */
+export const SHORT_ARC = 0.4;
+
 /**
  * The outer boundary of a convex ring (2 per corner, counter-clockwise, km) at a distance, corners rounded about the
  * outline's corners or squared off by tangents, a corner of more than 90 degrees by several, so that no squared
@@ -32,27 +35,42 @@ export const bufferPlane = (ring: Float64Array, bufferKm: number, edgeKm: number
     const length = Math.sqrt(dx * dx + dy * dy);
     return [dy / length, -dx / length];
   };
+  const angleAt = (j: number): number => {
+    const [nx, ny] = normal((j + count - 1) % count);
+    const [mx, my] = normal(j);
+    return atan2(nx * my - ny * mx, nx * mx + ny * my);
+  };
+  const isShort = (angle: number): boolean => angle * bufferKm < SHORT_ARC * edgeKm;
+  const push = (x: number, y: number): void => {
+    points.push(x, y);
+    curvature.push(0);
+  };
   /** All vertices of a straight stretch but its last. */
   const straight = (ax: number, ay: number, bx: number, by: number): void => {
     const length = Math.sqrt((bx - ax) ** 2 + (by - ay) ** 2);
     const steps = Math.max(1, Math.ceil(length / edgeKm));
-    for (let k = 0; k < steps; k++) {
-      points.push(ax + ((bx - ax) * k) / steps, ay + ((by - ay) * k) / steps);
-      curvature.push(0);
-    }
+    for (let k = 0; k < steps; k++) push(ax + ((bx - ax) * k) / steps, ay + ((by - ay) * k) / steps);
   };
   for (let i = 0; i < count; i++) {
     const j = (i + 1) % count;
     const [nx, ny] = normal(i);
-    const [mx, my] = normal(j);
-    const angle = atan2(nx * my - ny * mx, nx * mx + ny * my);
+    const angle = angleAt(j);
     turning[j] = angle;
     const vx = ring[2 * j], vy = ring[2 * j + 1];
+    const first = points.length;
     straight(ring[2 * i] + bufferKm * nx, ring[2 * i + 1] + bufferKm * ny, vx + bufferKm * nx, vy + bufferKm * ny);
     const at = (phi: number, r: number): [number, number] => {
       const c = cos(phi), s = sin(phi);
       return [vx + r * (c * nx - s * ny), vy + r * (s * nx + c * ny)];
     };
+    // the side's first vertex moves to the middle of the short arc before it
+    const before = angleAt(i);
+    if (isShort(before)) {
+      const c = cos(before / 2), s = sin(before / 2);
+      points[first] = ring[2 * i] + bufferKm * (c * nx + s * ny);
+      points[first + 1] = ring[2 * i + 1] + bufferKm * (c * ny - s * nx);
+    }
+    if (isShort(angle)) continue;
     if (corners === 'round') {
       const steps = Math.max(1, Math.ceil(angle / ARC_STEP), Math.ceil((angle * bufferKm) / edgeKm));
       for (let k = 0; k < steps; k++) {

@@ -1,6 +1,6 @@
 import { asin, atan2, cos, sin, tan, PI } from './deterministic-math.ts';
 import type { BufferedOutline, DistanceOutside } from './plane-outline.ts';
-import { ARC_STEP } from './plane-outline.ts';
+import { ARC_STEP, SHORT_ARC } from './plane-outline.ts';
 import type { Stereographic } from './stereographic.ts';
 
 type Vector = [number, number, number];
@@ -77,16 +77,27 @@ export const bufferSphere = (
     const steps = Math.max(1, Math.ceil((angle * radiusKm) / sideStep));
     for (let k = 0; k < steps; k++) push(towards(a, tangent, (angle * k) / steps), 0);
   };
+  const outwardOf = (i: number): Vector => [-inward[i][0], -inward[i][1], -inward[i][2]];
+  const angleAt = (j: number): number => {
+    const from = outwardOf((j + count - 1) % count);
+    return atan2(dot(cross(corner[j], from), outwardOf(j)), dot(from, outwardOf(j)));
+  };
+  const isShort = (angle: number): boolean => angle * sin(beta) * radiusKm < SHORT_ARC * edgeKm;
   for (let i = 0; i < count; i++) {
     const j = (i + 1) % count;
-    const outward: Vector = [-inward[i][0], -inward[i][1], -inward[i][2]];
-    const next: Vector = [-inward[j][0], -inward[j][1], -inward[j][2]];
+    const outward = outwardOf(i);
     const v = corner[j];
     const left = cross(v, outward);
-    const angle = atan2(dot(left, next), dot(outward, next));
+    const angle = angleAt(j);
     turning[j] = angle;
     const steps = Math.max(1, Math.ceil((length[i] * radiusKm) / sideStep));
-    for (let k = 0; k < steps; k++) push(offset(towards(corner[i], along[i], (length[i] * k) / steps), outward, beta), 0);
+    // the side's first vertex moves to the middle of the short arc before it
+    const before = angleAt(i);
+    for (let k = 0; k < steps; k++) {
+      if (k === 0 && isShort(before)) push(offset(corner[i], towards(outward, cross(corner[i], outward), -before / 2), beta), 0);
+      else push(offset(towards(corner[i], along[i], (length[i] * k) / steps), outward, beta), 0);
+    }
+    if (isShort(angle)) continue;
     const at = (phi: number, distance: number): Vector => offset(v, towards(outward, left, phi), distance);
     if (corners === 'round') {
       const arcSteps = Math.max(1, Math.ceil(angle / ARC_STEP), Math.ceil((angle * sin(beta) * radiusKm) / edgeKm));
