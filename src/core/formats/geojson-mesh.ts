@@ -6,17 +6,24 @@ type Position = [number, number];
 
 const KIND_NAMES = Object.fromEntries(Object.entries(NODE_KIND).map(([name, value]) => [value, name]));
 
+/** A position whose longitude may lie turns away from [-180, 180]; `exact` is the longitude it was given with. */
+interface Turned {
+  lon: number;
+  lat: number;
+  exact?: number;
+}
+
 /** Longitudes made continuous along the ring; a pole takes the longitude of either neighbour in turn. */
-const unwrap = (ring: Position[]): Position[] => {
-  const out: Position[] = [];
+const unwrap = (ring: Position[]): Turned[] => {
+  const out: Turned[] = [];
   for (const [k, [lon, lat]] of ring.entries()) {
     if (Math.abs(lat) === 90) {
       const before = ring[(k + ring.length - 1) % ring.length];
       const after = ring[(k + 1) % ring.length];
-      for (const [neighbour] of [before, after]) out.push([near(neighbour, out.at(-1)?.[0] ?? neighbour), lat]);
+      for (const [neighbour] of [before, after]) out.push({ lon: near(neighbour, out.at(-1)?.lon ?? neighbour), lat });
       continue;
     }
-    out.push([near(lon, out.at(-1)?.[0] ?? lon), lat]);
+    out.push({ lon: near(lon, out.at(-1)?.lon ?? lon), lat, exact: lon });
   }
   return out;
 };
@@ -30,64 +37,71 @@ const near = (lon: number, reference: number): number => {
 };
 
 /** The part of a convex ring on one side of a meridian. */
-const clip = (ring: Position[], meridian: number, keepWest: boolean): Position[] => {
-  const inside = ([lon]: Position): boolean => (keepWest ? lon <= meridian : lon >= meridian);
-  const out: Position[] = [];
+const clip = (ring: Turned[], meridian: number, keepWest: boolean): Turned[] => {
+  const inside = ({ lon }: Turned): boolean => (keepWest ? lon <= meridian : lon >= meridian);
+  const out: Turned[] = [];
   for (const [k, a] of ring.entries()) {
     const b = ring[(k + 1) % ring.length];
     if (inside(a)) out.push(a);
-    if (inside(a) !== inside(b) && a[0] !== b[0] && a[0] !== meridian && b[0] !== meridian) {
-      const t = (meridian - a[0]) / (b[0] - a[0]);
-      out.push([meridian, a[1] + t * (b[1] - a[1])]);
-    }
+    if (inside(a) !== inside(b) && a.lon !== meridian && b.lon !== meridian) out.push({ lon: meridian, lat: latitudeAt(meridian, a, b) });
   }
   return out.length >= 3 ? out : [];
 };
 
-const shift = (ring: Position[], by: number): Position[] => ring.map(([lon, lat]) => [lon + by, lat]);
+/** Where the straight line in longitude and latitude from a to b meets a meridian. */
+const latitudeAt = (meridian: number, a: Turned, b: Turned): number => a.lat + ((meridian - a.lon) / (b.lon - a.lon)) * (b.lat - a.lat);
+
+/** Turned back by `turns`; turning to and fro rounds, so a given longitude comes out as it was given. */
+const turnBack = ({ lon, lat, exact }: Turned, turns: number): Position => {
+  const turned = lon - 360 * turns;
+  return [exact !== undefined && Math.abs(exact - turned) < 1e-9 ? exact : turned, lat];
+};
+
 const close = (ring: Position[]): Position[] => [...ring, ring[0]];
 
 /** Rings of a convex polygon on the sphere, cut at the antimeridian (RFC 7946, 3.1.9), longitudes in [-180, 180]. */
 export const cutRing = (ring: Position[]): Position[][] => {
   let flat = unwrap(ring);
-  const last = flat[flat.length - 1];
-  const winding = near(flat[0][0], last[0]) - flat[0][0];
+  const [first] = flat;
+  const winding = near(first.lon, flat[flat.length - 1].lon) - first.lon;
   if (Math.abs(winding) > 180) {
     // the ring goes round a pole: close it along the pole, one turn on
     const pole = winding > 0 ? 90 : -90;
-    const turned: Position = [flat[0][0] + winding, flat[0][1]];
-    flat = [...flat, turned, [turned[0], pole], [flat[0][0], pole]];
+    const lon = first.lon + winding;
+    flat = [...flat, { ...first, lon }, { lon, lat: pole }, { lon: first.lon, lat: pole }];
   }
-  const west = Math.min(...flat.map(([lon]) => lon));
-  const east = Math.max(...flat.map(([lon]) => lon));
+  const longitudes = flat.map(({ lon }) => lon);
+  const west = Math.min(...longitudes);
+  const east = Math.max(...longitudes);
   const rings: Position[][] = [];
   for (let turn = Math.floor((west + 180) / 360); turn <= Math.ceil((east + 180) / 360) - 1; turn++) {
     const from = 360 * turn - 180;
     const part = clip(clip(flat, from, false), from + 360, true);
-    if (part.length >= 3) rings.push(shift(part, -360 * turn));
+    if (part.length >= 3) rings.push(part.map((position) => turnBack(position, turn)));
   }
-  return rings.length > 0 ? rings : [shift(flat, -360 * Math.floor((west + 180) / 360))];
+  return rings.length > 0 ? rings : [flat.map((position) => turnBack(position, Math.floor((west + 180) / 360)))];
 };
 
 /** A closed line cut at the antimeridian: pieces with longitudes in [-180, 180]. */
 export const cutLoop = (ring: Position[]): Position[][] => {
   const flat = unwrap(ring);
-  flat.push([near(flat[0][0], flat[flat.length - 1][0]), flat[0][1]]);
+  flat.push({ ...flat[0], lon: near(flat[0].lon, flat[flat.length - 1].lon) });
   const turnOf = (lon: number): number => Math.floor((lon + 180) / 360);
   const pieces: Position[][] = [];
   let piece: Position[] = [];
-  let turn = turnOf((flat[0][0] + flat[1][0]) / 2);
-  for (const [k, [lon, lat]] of flat.entries()) {
-    piece.push([lon - 360 * turn, lat]);
+  // a start on the meridian belongs to the side that the line goes to
+  let turn = turnOf(flat[0].lon) - (turnOf(flat[0].lon) * 360 - 180 === flat[0].lon && flat[1].lon < flat[0].lon ? 1 : 0);
+  for (const [k, here] of flat.entries()) {
+    piece.push(turnBack(here, turn));
     const next = flat[k + 1];
     if (!next) break;
-    const nextTurn = next[0] > lon ? Math.max(turn, Math.ceil((next[0] + 180) / 360) - 1) : next[0] < lon ? Math.min(turn, turnOf(next[0])) : turn;
+    const nextTurn = next.lon > here.lon ? Math.max(turn, Math.ceil((next.lon + 180) / 360) - 1) : next.lon < here.lon ? Math.min(turn, turnOf(next.lon)) : turn;
     if (nextTurn === turn) continue;
     const meridian = 360 * Math.max(turn, nextTurn) - 180;
-    const at = lat + ((meridian - lon) / (next[0] - lon)) * (next[1] - lat);
-    piece.push([meridian - 360 * turn, at]);
+    const lat = latitudeAt(meridian, here, next);
+    if (here.lon !== meridian) piece.push([meridian - 360 * turn, lat]);
     pieces.push(piece);
-    piece = [[meridian - 360 * nextTurn, at]];
+    piece = [[meridian - 360 * nextTurn, lat]];
     turn = nextTurn;
   }
   pieces.push(piece);

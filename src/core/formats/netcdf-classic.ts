@@ -21,6 +21,9 @@ export interface NetcdfDataset {
 const TAG = { dimension: 10, variable: 11, attribute: 12 } as const;
 const TYPE = { byte: 1, char: 2, int: 4, double: 6 } as const;
 
+/** NC_FILL_BYTE, -127, as an unsigned byte: what the specification asks for between a byte variable and the next. */
+const BYTE_FILL = 0x81;
+
 const padded = (length: number): number => 4 * Math.ceil(length / 4);
 
 /** Appends big-endian values; with `bytes` null it only counts. */
@@ -51,13 +54,14 @@ class Writer {
     this.at += padded(encoded.length);
   }
 
-  /** Values of a typed array, padded to four bytes. */
-  array(data: NetcdfVariable['data'] | Int8Array): void {
+  /** Values of a typed array, padded to four bytes with `fill`: zeros in the header, the type's fill value in data. */
+  array(data: NetcdfVariable['data'], fill = 0): void {
     let at = this.at;
     if (this.view && this.bytes) {
       if (data instanceof Float64Array) for (const value of data) this.view.setFloat64((at += 8) - 8, value);
       else if (data instanceof Int32Array) for (const value of data) this.view.setInt32((at += 4) - 4, value);
       else this.bytes.set(data, at);
+      this.bytes.fill(fill, this.at + data.byteLength, this.at + padded(data.byteLength));
     }
     this.at += padded(data.byteLength);
   }
@@ -135,6 +139,6 @@ export const writeNetcdf = (dataset: NetcdfDataset): Uint8Array => {
   }
   const w = new Writer(end);
   writeHeader(w, dataset, begins);
-  for (const { data } of dataset.variables) w.array(data);
+  for (const { data } of dataset.variables) w.array(data, BYTE_FILL);
   return w.bytes!;
 };

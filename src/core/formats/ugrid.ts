@@ -32,7 +32,10 @@ export const writeUgrid = (mesh: DesignedMesh, selected: SelectedObservations, l
   const [x, y] = isSphere ? ['node_lon', 'node_lat'] : ['node_x', 'node_y'];
   const [ox, oy] = isSphere ? ['observation_lon', 'observation_lat'] : ['observation_x', 'observation_y'];
   const coordinates = `${x} ${y}`;
-  const onNode = { mesh: 'mesh', location: 'node', coordinates, grid_mapping: 'crs' };
+  // in the plane the projection is the observation set's own and not known here: CF then has no grid mapping
+  const onGrid: Record<string, NetcdfAttribute> = isSphere ? { grid_mapping: 'crs' } : {};
+  const onNode = { mesh: 'mesh', location: 'node', coordinates, ...onGrid };
+  const onObservation = { coordinates: `${ox} ${oy}`, ...onGrid };
   const edges = boundaryEdges(mesh.boundaryLoops);
 
   const axis = (k: 0 | 1): Record<string, NetcdfAttribute> =>
@@ -56,14 +59,16 @@ export const writeUgrid = (mesh: DesignedMesh, selected: SelectedObservations, l
         boundary_node_connectivity: 'boundary_nodes',
       },
     },
-    {
-      name: 'crs',
-      dimensions: [],
-      data: Int32Array.of(0),
-      attributes: isSphere
-        ? { grid_mapping_name: 'latitude_longitude', earth_radius: double(1000 * mesh.radiusKm), long_name: 'sphere; earth_radius in metres' }
-        : { long_name: 'plane in km; its projection is that of the observation set and is not known here' },
-    },
+    ...(isSphere
+      ? [
+          {
+            name: 'crs',
+            dimensions: [],
+            data: Int32Array.of(0),
+            attributes: { grid_mapping_name: 'latitude_longitude', earth_radius: double(1000 * mesh.radiusKm), long_name: 'sphere; earth_radius in metres' },
+          },
+        ]
+      : []),
     { name: x, dimensions: ['node'], data: coordinate(0), attributes: { ...axis(0), long_name: `${isSphere ? 'longitude' : 'x'} of nodes` } },
     { name: y, dimensions: ['node'], data: coordinate(1), attributes: { ...axis(1), long_name: `${isSphere ? 'latitude' : 'y'} of nodes` } },
     {
@@ -117,13 +122,13 @@ export const writeUgrid = (mesh: DesignedMesh, selected: SelectedObservations, l
       name: 'face_area',
       dimensions: ['face'],
       data: elementQuality(mesh).areaKm2,
-      attributes: { mesh: 'mesh', location: 'face', long_name: 'area of the flat element', standard_name: 'cell_area', units: 'km2' },
+      attributes: { mesh: 'mesh', location: 'face', ...onGrid, long_name: 'area of the flat element', standard_name: 'cell_area', units: 'km2' },
     },
     {
       name: 'observation_node',
       dimensions: ['observation'],
       data: Int32Array.from(mesh.observationNode),
-      attributes: { long_name: 'node of each observation, counted from 0', coordinates: `${ox} ${oy}`, grid_mapping: 'crs' },
+      attributes: { long_name: 'node of each observation, counted from 0', ...onObservation },
     },
     { name: ox, dimensions: ['observation'], data: selected.x, attributes: { ...axis(0), long_name: `${isSphere ? 'longitude' : 'x'} of observations` } },
     { name: oy, dimensions: ['observation'], data: selected.y, attributes: { ...axis(1), long_name: `${isSphere ? 'latitude' : 'y'} of observations` } },
@@ -131,7 +136,7 @@ export const writeUgrid = (mesh: DesignedMesh, selected: SelectedObservations, l
       name: 'observation_row_count',
       dimensions: ['observation'],
       data: Int32Array.from(selected.x, (_, i) => selected.rowStart[i + 1] - selected.rowStart[i]),
-      attributes: { long_name: 'rows of the observation set that were combined into the observation', coordinates: `${ox} ${oy}` },
+      attributes: { long_name: 'rows of the observation set that were combined into the observation', ...onObservation },
     },
   ];
   if (selected.errorSd)
@@ -139,7 +144,7 @@ export const writeUgrid = (mesh: DesignedMesh, selected: SelectedObservations, l
       name: 'observation_error_sd',
       dimensions: ['observation'],
       data: selected.errorSd,
-      attributes: { long_name: 'observation error standard deviation, in the unit of the observations; NaN where not given', coordinates: `${ox} ${oy}`, _FillValue: double(NaN) },
+      attributes: { long_name: 'observation error standard deviation, in the unit of the observations; NaN where not given', ...onObservation, _FillValue: double(NaN) },
     });
   return writeNetcdf({
     dimensions: { node: nodes, face: faces, boundary_edge: edges.length / 2, observation: selected.x.length, two: 2, three: 3 },
