@@ -1,5 +1,7 @@
 import { z } from 'zod/v4';
 
+import { listQuerySchema } from './list.ts';
+
 /** A column of the file, by its index from 0 (CSV) or by its property name (GeoJSON). */
 const column = z.union([z.int().min(0).max(10_000), z.string().min(1).max(200)]);
 
@@ -33,6 +35,9 @@ export const rejectedRowSchema = z.object({
   reason: z.string(),
 });
 export type RejectedRow = z.infer<typeof rejectedRowSchema>;
+
+/** Query of `/rejected`: a page as JSON, or all of them as a CSV file. */
+export const rejectedQuerySchema = listQuerySchema.extend({ format: z.enum(['json', 'csv']).default('json') });
 
 export const observationSetSchema = z.object({
   id: z.string(),

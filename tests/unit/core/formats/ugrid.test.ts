@@ -31,7 +31,7 @@ const made = (crs: CoordinateReference, errorSd?: Float64Array) => {
 };
 
 const attributesOf = (reader: NetCDFReader, name: string): Record<string, unknown> =>
-  Object.fromEntries(reader.variables.find((variable) => variable.name === name)!.attributes.map((attribute) => [attribute.name, attribute.value]));
+  Object.fromEntries((reader.variables.find((variable) => variable.name === name)!.attributes as { name: string; value: unknown }[]).map((attribute) => [attribute.name, attribute.value]));
 
 describe('writeUgrid', () => {
   const sphere = made('lonlat-deg');
