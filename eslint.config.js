@@ -53,6 +53,13 @@ export default tseslint.config(
   {
     files: ['src/core/design/**', 'src/core/geometry/**'],
     rules: {
+      'no-restricted-syntax': [
+        'error',
+        {
+          selector: "BinaryExpression[operator='**'][left.type!='Literal']",
+          message: 'Not the same bits on every machine: multiply.',
+        },
+      ],
       'no-restricted-properties': [
         'error',
         ...['random', 'sin', 'cos', 'tan', 'asin', 'acos', 'atan', 'atan2', 'exp', 'log', 'pow', 'hypot'].map((property) => ({

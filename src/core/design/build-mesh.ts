@@ -1,4 +1,5 @@
 import { NumericalError } from '#core/errors.ts';
+import { planeDistance } from '#core/geometry/distance.ts';
 import type { Mesh } from '#core/geometry/mesh.ts';
 import { NODE_KIND } from '#core/geometry/mesh.ts';
 import { refine } from '#core/geometry/refine.ts';
@@ -171,7 +172,7 @@ const startingSizes = (
   for (let e = 0; e < edgeCount; e++) {
     const a = triangles[e], b = triangles[e % 3 === 2 ? e - 2 : e + 1];
     const scale = scaleAt ? scaleAt((p[2 * a] + p[2 * b]) / 2, (p[2 * a + 1] + p[2 * b + 1]) / 2) : 1;
-    length[e] = Math.sqrt((p[2 * a] - p[2 * b]) ** 2 + (p[2 * a + 1] - p[2 * b + 1]) ** 2) / scale;
+    length[e] = planeDistance(p[2 * a], p[2 * a + 1], p[2 * b], p[2 * b + 1]) / scale;
     // an inner edge is met from both sides: count it from the first
     if (a < count && b < count && !(t.twins[e] >= 0 && t.twins[e] < e)) {
       note(a, length[e]);

@@ -46,7 +46,7 @@ export const defaultRecipe = (columns: ObservationColumns, model: CorrelationMod
   const derivedKm = derivedCoreSpacing(spacingKm);
   const neededKm = RESOLUTION[model.kind] * (daleyKm || scaleKm);
   const areaKm2 = cellAreaKm2.reduce((sum, area) => sum + area, 0);
-  const isFiner = neededKm < derivedKm && areaKm2 / neededKm ** 2 <= MOST_CORE_NODES;
+  const isFiner = neededKm < derivedKm && areaKm2 / (neededKm * neededKm) <= MOST_CORE_NODES;
   if (isFiner) recipe.coreSpacingKm = roundFigure(neededKm, 'down');
   recipe.selection.near.km = roundFigure(NEAR_SHARE * Math.min(derivedKm, neededKm), 'down');
   return recipe;

@@ -28,7 +28,7 @@ export interface SelectedObservations {
   exclusion: Uint8Array;
 }
 
-/** A convex corner of the outline, where the rounded buffer focuses the boundary effect. */
+/** A convex corner of the outline; a buffer rounded about it focuses the boundary effect there. */
 export interface OutlineCorner {
   /** Index of the observation at the corner; -1 where the corner is not an observation (box). */
   observation: number;
@@ -37,6 +37,8 @@ export interface OutlineCorner {
   y: number;
   /** Change of direction at the corner, radians, 0 < turning < pi. */
   turning: number;
+  /** Whether the boundary is an arc about the corner; squared off otherwise. */
+  isRounded: boolean;
 }
 
 /** What `buildMesh` returns: the mesh, what each node is, and the boundary it was given. */
@@ -50,7 +52,7 @@ export interface DesignedMesh extends Mesh {
   /** Closed loops of node indices, first node not repeated: outer boundaries counter-clockwise, holes clockwise. */
   boundaryLoops: Uint32Array[];
   /**
-   * Signed curvature in 1/km of the boundary along each boundary edge, loop after loop in the order of
+   * Signed curvature in 1/km of the boundary, its mean along each boundary edge, loop after loop in the order of
    * `boundaryLoops` (edge k of a loop joins its nodes k and k + 1): 0 straight, 1/R on an arc of radius R
    * that bulges out of the domain, negative round a hole.
    */

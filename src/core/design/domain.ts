@@ -3,6 +3,7 @@ import { convexHull } from '#core/geometry/convex-hull.ts';
 import { cosDegrees, degrees, atan2 } from '#core/geometry/deterministic-math.ts';
 import type { BufferedOutline, DistanceOutside } from '#core/geometry/plane-outline.ts';
 import { bufferPlane, distanceOutsidePlane } from '#core/geometry/plane-outline.ts';
+import { planeDistance, vectorLength } from '#core/geometry/distance.ts';
 import { greatCircleKm, writeLonLat, writeUnitVector } from '#core/geometry/sphere.ts';
 import { bufferSphere, distanceOutsideSphere } from '#core/geometry/sphere-outline.ts';
 import type { Stereographic } from '#core/geometry/stereographic.ts';
@@ -18,7 +19,7 @@ export interface Domain {
   projection: Stereographic | null;
   /** Outline corners in the set's own coordinates, 2 per corner, counter-clockwise. */
   outline: Float64Array;
-  /** Corners as in `outline`; `turning` is filled from the buffer. */
+  /** Corners as in `outline`; `turning` and `isRounded` are filled from the buffer. */
   corners: OutlineCorner[];
   /** Length of the outline on the ground, km. */
   perimeterKm: number;
@@ -64,6 +65,7 @@ const cornersOf = (outline: Float64Array, observations: ArrayLike<number> | null
     x: outline[2 * i],
     y: outline[2 * i + 1],
     turning: 0,
+    isRounded: false,
   }));
 
 const perimeterOf = (ring: Float64Array, distance: (ax: number, ay: number, bx: number, by: number) => number): number => {
@@ -121,14 +123,14 @@ const planeDomain = (selected: SelectedObservations, outline: Outline): Domain =
     projection: null,
     outline: ring,
     corners,
-    perimeterKm: perimeterOf(ring, (ax, ay, bx, by) => Math.sqrt((bx - ax) ** 2 + (by - ay) ** 2)),
+    perimeterKm: perimeterOf(ring, planeDistance),
     distanceOutside: distanceOutsidePlane(ring),
     buffer: (bufferKm, edgeKm, kind) => withTurning(bufferPlane(ring, bufferKm, edgeKm, kind), corners),
   };
 };
 
 const withTurning = (buffered: BufferedOutline, corners: OutlineCorner[]): BufferedOutline => {
-  for (const [i, corner] of corners.entries()) corner.turning = buffered.turning[i];
+  for (const [i, corner] of corners.entries()) Object.assign(corner, { turning: buffered.turning[i], isRounded: buffered.isRounded[i] });
   return buffered;
 };
 
@@ -136,7 +138,7 @@ const withTurning = (buffered: BufferedOutline, corners: OutlineCorner[]): Buffe
 const dataFrame = (vectors: Float64Array, kind: Outline['kind']): { centre: Float64Array; east: Float64Array; widest: number } => {
   const centre = new Float64Array(3);
   for (let k = 0; k < vectors.length; k++) centre[k % 3] += vectors[k];
-  const length = Math.sqrt(centre[0] ** 2 + centre[1] ** 2 + centre[2] ** 2);
+  const length = vectorLength(centre);
   if (!(length > 1e-6 * (vectors.length / 3))) throw tooWide();
   for (let k = 0; k < 3; k++) centre[k] /= length;
   let farthest = 0;
@@ -154,10 +156,12 @@ const dataFrame = (vectors: Float64Array, kind: Outline['kind']): { centre: Floa
   const aim = kind === 'convex' ? vectors.subarray(farthest, farthest + 3) : Float64Array.of(0, 0, 1);
   const along = aim[0] * centre[0] + aim[1] * centre[1] + aim[2] * centre[2];
   const axis = Float64Array.from(aim, (a, k) => a - along * centre[k]);
-  let axisLength = Math.sqrt(axis[0] ** 2 + axis[1] ** 2 + axis[2] ** 2);
+  let axisLength = vectorLength(axis);
   if (axisLength < 1e-12) {
-    axis.set(Math.abs(centre[2]) < 0.9 ? [-centre[0] * centre[2], -centre[1] * centre[2], 1 - centre[2] ** 2] : [1 - centre[0] ** 2, -centre[0] * centre[1], -centre[0] * centre[2]]);
-    axisLength = Math.sqrt(axis[0] ** 2 + axis[1] ** 2 + axis[2] ** 2);
+    // the part of another axis of the globe that is at right angles to the centre
+    const k = Math.abs(centre[2]) < 0.9 ? 2 : 0;
+    axis.set(centre.map((c, j) => (j === k ? 1 : 0) - centre[k] * c));
+    axisLength = vectorLength(axis);
   }
   for (let k = 0; k < 3; k++) axis[k] /= axisLength;
   const east =

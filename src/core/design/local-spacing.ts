@@ -1,4 +1,5 @@
 import { NumericalError } from '#core/errors.ts';
+import { vectorLength } from '#core/geometry/distance.ts';
 import type { CoordinateReference } from '#core/geometry/mesh.ts';
 import { greatCircleKm, writeLonLat, writeUnitVector } from '#core/geometry/sphere.ts';
 import { createStereographic } from '#core/geometry/stereographic.ts';
@@ -198,7 +199,7 @@ const chooseCentre = (lon: Float64Array, lat: Float64Array): [number, number] =>
     writeUnitVector(lon[i], lat[i], vectors, 3 * i);
     for (let k = 0; k < 3; k++) mean[k] += vectors[3 * i + k];
   }
-  const length = Math.sqrt(mean[0] ** 2 + mean[1] ** 2 + mean[2] ** 2);
+  const length = vectorLength(mean);
   if (length > 0) {
     const direction = mean.map((component) => component / length);
     if (antipodeCosine(direction, vectors) < ANTIPODE_CLEARANCE) {

@@ -57,8 +57,7 @@ export function boundaryFindings(mesh: CheckedMesh, figures: BoundaryFigures | n
   ];
 }
 
-/** Largest turning of an outline corner, radians; 0 where the boundary has no arcs. */
+/** Largest turning of an outline corner with an arc about it, radians; 0 without arcs. */
 function sharpestRoundedCorner(mesh: CheckedMesh): number {
-  if (!mesh.boundaryCurvature?.some((k) => k > 0)) return 0;
-  return (mesh.outlineCorners ?? []).reduce((most, corner) => Math.max(most, corner.turning), 0);
+  return (mesh.outlineCorners ?? []).reduce((most, corner) => (corner.isRounded ? Math.max(most, corner.turning) : most), 0);
 }

@@ -1,6 +1,9 @@
 import { asin, atan2, cos, sin, tan, PI } from './deterministic-math.ts';
+import type { Stretch } from './offset-curve.ts';
+import { layVertices } from './offset-curve.ts';
 import type { BufferedOutline, DistanceOutside } from './plane-outline.ts';
-import { ARC_STEP, SHORT_ARC } from './plane-outline.ts';
+import { ARC_STEP, isRoundedCorner } from './plane-outline.ts';
+import { createSectorIndex } from './sector-index.ts';
 import type { Stereographic } from './stereographic.ts';
 
 type Vector = [number, number, number];
@@ -59,91 +62,118 @@ export const bufferSphere = (
   const { corner, inward, along, length } = sidesOf(ring);
   const count = corner.length;
   const beta = bufferKm / radiusKm;
-  const points: number[] = [];
-  const curvature: number[] = [];
   const turning = new Float64Array(count);
+  const stretches: Stretch[] = [];
   const plane = new Float64Array(2);
-  const push = (p: Vector, bend: number): void => {
+  const pushTo = (out: number[], p: Vector): void => {
     projection.forwardVector(p[0], p[1], p[2], plane, 0);
-    points.push(plane[0], plane[1]);
-    curvature.push(bend);
+    out.push(plane[0], plane[1]);
   };
-  const offset = (q: Vector, outward: Vector, distance: number): Vector => towards(q, outward, distance);
   // chords in the plane stay within 0.5 % of the buffer of the small circles they stand for
   const sideStep = Math.min(edgeKm, Math.sqrt(0.03 * bufferKm * radiusKm));
-  const greatCircle = (a: Vector, b: Vector): void => {
+  const greatCircle = (a: Vector, b: Vector, isCorner: boolean): void => {
     const angle = angleOf(a, b);
     const tangent = unit(cross(cross(a, b), a));
-    const steps = Math.max(1, Math.ceil((angle * radiusKm) / sideStep));
-    for (let k = 0; k < steps; k++) push(towards(a, tangent, (angle * k) / steps), 0);
+    stretches.push({ length: angle * radiusKm, step: sideStep, bend: 0, isCorner, push: (share, out) => pushTo(out, towards(a, tangent, angle * share)) });
   };
-  const outwardOf = (i: number): Vector => [-inward[i][0], -inward[i][1], -inward[i][2]];
-  const angleAt = (j: number): number => {
-    const from = outwardOf((j + count - 1) % count);
-    return atan2(dot(cross(corner[j], from), outwardOf(j)), dot(from, outwardOf(j)));
-  };
-  const isShort = (angle: number): boolean => angle * sin(beta) * radiusKm < SHORT_ARC * edgeKm;
+  const outwards = inward.map(([x, y, z]): Vector => [-x, -y, -z]);
   for (let i = 0; i < count; i++) {
     const j = (i + 1) % count;
-    const outward = outwardOf(i);
+    const outward = outwards[i];
     const v = corner[j];
     const left = cross(v, outward);
-    const angle = angleAt(j);
+    const angle = atan2(dot(left, outwards[j]), dot(outward, outwards[j]));
     turning[j] = angle;
-    const steps = Math.max(1, Math.ceil((length[i] * radiusKm) / sideStep));
-    // the side's first vertex moves to the middle of the short arc before it
-    const before = angleAt(i);
-    for (let k = 0; k < steps; k++) {
-      if (k === 0 && isShort(before)) push(offset(corner[i], towards(outward, cross(corner[i], outward), -before / 2), beta), 0);
-      else push(offset(towards(corner[i], along[i], (length[i] * k) / steps), outward, beta), 0);
-    }
-    if (isShort(angle)) continue;
-    const at = (phi: number, distance: number): Vector => offset(v, towards(outward, left, phi), distance);
-    if (corners === 'round') {
-      const arcSteps = Math.max(1, Math.ceil(angle / ARC_STEP), Math.ceil((angle * sin(beta) * radiusKm) / edgeKm));
-      const bend = 1 / (radiusKm * tan(beta));
-      for (let k = 0; k < arcSteps; k++) push(at((angle * k) / arcSteps, beta), bend);
+    stretches.push({
+      length: length[i] * cos(beta) * radiusKm,
+      step: sideStep,
+      bend: 0,
+      isCorner: false,
+      push: (share, out) => pushTo(out, towards(towards(corner[i], along[i], length[i] * share), outward, beta)),
+    });
+    const at = (phi: number, distance: number): Vector => towards(v, towards(outward, left, phi), distance);
+    if (isRoundedCorner(corners, angle)) {
+      const arcRadius = sin(beta) * radiusKm;
+      stretches.push({
+        length: angle * arcRadius,
+        step: Math.min(edgeKm, ARC_STEP * arcRadius),
+        bend: 1 / (radiusKm * tan(beta)),
+        isCorner: false,
+        push: (share, out) => pushTo(out, at(angle * share, beta)),
+      });
     } else {
       const parts = Math.max(1, Math.ceil(angle / (PI / 2)));
       // right-angled spherical triangle: tan(leg) = tan(hypotenuse) cos(angle between)
       const reach = atan2(sin(beta), cos(beta) * cos(angle / (2 * parts)));
       for (let k = 0; k < parts; k++) {
         const tip = at((angle * (k + 0.5)) / parts, reach);
-        greatCircle(at((angle * k) / parts, beta), tip);
-        greatCircle(tip, at((angle * (k + 1)) / parts, beta));
+        greatCircle(at((angle * k) / parts, beta), tip, false);
+        greatCircle(tip, at((angle * (k + 1)) / parts, beta), true);
       }
     }
   }
-  return { boundary: Float64Array.from(points), curvature: Float64Array.from(curvature), turning };
+  return { ...layVertices(stretches), turning, isRounded: Array.from(turning, (angle) => isRoundedCorner(corners, angle)) };
 };
 
-/** `DistanceOutside` for a convex ring on the sphere, from positions in the projection's plane. */
+/** Beyond this many radians the distance may have several least values along the outline. */
+const FAR = 1.4;
+
+/**
+ * `DistanceOutside` for a convex ring on the sphere that holds the projection's centre, from positions in the
+ * projection's plane: from the side in the position's direction, along the sides that face it.
+ */
 export const distanceOutsideSphere = (ring: Float64Array, radiusKm: number, projection: Stereographic): DistanceOutside => {
   const { corner, inward, along, length } = sidesOf(ring);
   const count = corner.length;
   const n = Float64Array.from(inward.flat());
   const t = Float64Array.from(along.flat());
   const c = Float64Array.from(corner.flat());
+  const flat = new Float64Array(2 * count);
+  for (let i = 0; i < count; i++) projection.forwardVector(c[3 * i], c[3 * i + 1], c[3 * i + 2], flat, 2 * i);
+  const sideTowards = createSectorIndex(flat, 0, 0);
   const p = new Float64Array(3);
-  return (x, y) => {
-    projection.inverseVector(x, y, p, 0);
+  const outOf = (i: number): number => -(p[0] * n[3 * i] + p[1] * n[3 * i + 1] + p[2] * n[3 * i + 2]);
+  /** Where p's foot lies on side i: -1 before it, 0 on it, 1 beyond. */
+  const placeOn = (i: number): number => {
+    const a = p[0] * t[3 * i] + p[1] * t[3 * i + 1] + p[2] * t[3 * i + 2];
+    if (a < 0) return -1;
+    return atan2(a, p[0] * c[3 * i] + p[1] * c[3 * i + 1] + p[2] * c[3 * i + 2]) > length[i] ? 1 : 0;
+  };
+  const toSide = (i: number): number => {
+    const out = outOf(i);
+    return asin(out > 1 ? 1 : out > 0 ? out : 0);
+  };
+  const toCorner = (i: number): number => {
+    const dx = p[0] - c[3 * i], dy = p[1] - c[3 * i + 1], dz = p[2] - c[3 * i + 2];
+    const chord2 = dx * dx + dy * dy + dz * dz;
+    return 2 * asin(chord2 >= 4 ? 1 : Math.sqrt(chord2) / 2);
+  };
+  const leastOfAll = (): number => {
     let nearest = Infinity;
-    for (let i = 0; i < 3 * count; i += 3) {
-      const out = -(p[0] * n[i] + p[1] * n[i + 1] + p[2] * n[i + 2]);
-      if (out <= 0) continue;
-      const a = p[0] * t[i] + p[1] * t[i + 1] + p[2] * t[i + 2];
-      const b = p[0] * c[i] + p[1] * c[i + 1] + p[2] * c[i + 2];
-      const angle = a < 0 ? -1 : atan2(a, b);
-      let d: number;
-      if (angle >= 0 && angle <= length[i / 3]) d = asin(out > 1 ? 1 : out);
-      else {
-        const k = angle < 0 ? i : (i + 3) % (3 * count);
-        const cosine = p[0] * c[k] + p[1] * c[k + 1] + p[2] * c[k + 2];
-        const chord2 = 2 - 2 * cosine;
-        d = 2 * asin(chord2 >= 4 ? 1 : Math.sqrt(chord2 > 0 ? chord2 : 0) / 2);
-      }
+    for (let i = 0; i < count; i++) {
+      if (outOf(i) <= 0) continue;
+      const place = placeOn(i);
+      const d = place === 0 ? toSide(i) : toCorner(place < 0 ? i : (i + 1) % count);
       if (d < nearest) nearest = d;
     }
-    return nearest === Infinity ? 0 : nearest * radiusKm;
+    return nearest === Infinity ? 0 : nearest;
+  };
+  const angleOutside = (x: number, y: number): number => {
+    let i = sideTowards(x, y);
+    if (outOf(i) <= 0) return 0;
+    let heading = 0;
+    for (let step = 0; step < count; step++) {
+      const next = placeOn(i);
+      if (next === 0) return toSide(i);
+      if (heading + next === 0) return toCorner(next < 0 ? i : (i + 1) % count);
+      heading = next;
+      i = (i + next + count) % count;
+    }
+    return Infinity;
+  };
+  return (x, y) => {
+    projection.inverseVector(x, y, p, 0);
+    const angle = angleOutside(x, y);
+    return (angle < FAR ? angle : leastOfAll()) * radiusKm;
   };
 };
