@@ -1,5 +1,6 @@
 import { NumericalError } from '#core/errors.ts';
 
+import { planeDistance } from './distance.ts';
 import type { Triangulation } from './triangulation.ts';
 import { createInserter } from './triangulation.ts';
 
@@ -25,6 +26,14 @@ const SIN_BOUND_2 = 0.17860619515673032;
 const OFF_CENTRE = 0.95 / (2 * 0.2216946626429399);
 /** A triangle is too large when its circumradius exceeds this share of its size: 1/sqrt(3) is the equilateral one. */
 const SIZE_SHARE = 0.84;
+/** Edges as long as each other but for rounding are told apart by their place, so that turning all points changes nothing. */
+const SHORTER = 1 - 1e-9;
+/**
+ * Vertices stand this share nearer to the edge at most, each by another amount: vertices at equal sizes along a straight
+ * boundary would else lie on common circles, whose diagonals rounding would choose.
+ */
+const NUDGE = 1e-3;
+const GOLDEN = 0.6180339887498949;
 /** Boundary edges are split no finer than this share of the size there. */
 const FINEST_SPLIT = 0.3;
 
@@ -72,8 +81,8 @@ export const refine = (t: Triangulation, options: RefineOptions): Float64Array =
     const radius2 = ux * ux + uy * uy;
     let shortest = ab, p0 = a, p1 = b;
     let ox = 0, oy = 0, qx = bx, qy = by;
-    if (bc < shortest) { shortest = bc; p0 = b; p1 = c; ox = bx; oy = by; qx = cx; qy = cy; }
-    if (ac < shortest) { shortest = ac; p0 = c; p1 = a; ox = cx; oy = cy; qx = 0; qy = 0; }
+    if (bc < SHORTER * shortest) { shortest = bc; p0 = b; p1 = c; ox = bx; oy = by; qx = cx; qy = cy; }
+    if (ac < SHORTER * shortest) { shortest = ac; p0 = c; p1 = a; ox = cx; oy = cy; qx = 0; qy = 0; }
     const scale = scaleAt ? scaleAt(ax + (bx + cx) / 3, ay + (by + cy) / 3) : 1;
     const h = (scale * (size[a] + size[b] + size[c])) / 3;
     const isLarge = radius2 > SIZE_SHARE * SIZE_SHARE * h * h;
@@ -90,7 +99,7 @@ export const refine = (t: Triangulation, options: RefineOptions): Float64Array =
     const offCentre = isLarge
       ? Math.sqrt(Math.max(h * h - shortest / 4, 0.75 * shortest))
       : Math.sqrt(shortest) * OFF_CENTRE;
-    const share = offCentre < reach ? offCentre / reach : 1;
+    const share = (offCentre < reach ? offCentre / reach : 1) * (1 - NUDGE * ((t.vertexCount * GOLDEN) % 1));
     px = ax + mx + share * dx;
     py = ay + my + share * dy;
     return true;
@@ -109,7 +118,7 @@ export const refine = (t: Triangulation, options: RefineOptions): Float64Array =
     for (const k of inserter.changed)
       for (let e = 3 * k; e < 3 * k + 2; e++) {
         const w = v[e];
-        const d = Math.sqrt((p[2 * w] - x) ** 2 + (p[2 * w + 1] - y) ** 2) / scale;
+        const d = planeDistance(p[2 * w], p[2 * w + 1], x, y) / scale;
         const limit = size[w] + slope * d;
         if (limit < s) s = limit;
       }
@@ -134,7 +143,7 @@ export const refine = (t: Triangulation, options: RefineOptions): Float64Array =
     const { points: p, triangles: v } = t;
     const a = v[e], b = v[e % 3 === 2 ? e - 2 : e + 1];
     const x = (p[2 * a] + p[2 * b]) / 2, y = (p[2 * a + 1] + p[2 * b + 1]) / 2;
-    const length = Math.sqrt((p[2 * a] - p[2 * b]) ** 2 + (p[2 * a + 1] - p[2 * b + 1]) ** 2);
+    const length = planeDistance(p[2 * a], p[2 * a + 1], p[2 * b], p[2 * b + 1]);
     const scale = scaleAt ? scaleAt(x, y) : 1;
     if (length / 2 < (FINEST_SPLIT * scale * (size[a] + size[b])) / 2) return false;
     const vertex = inserter.insert(x, y, (e / 3) | 0, e);

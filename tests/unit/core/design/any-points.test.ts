@@ -3,7 +3,8 @@ import { describe, expect, it } from 'vitest';
 
 import { runRecipe } from '#core/design/run-recipe.ts';
 import { NumericalError } from '#core/errors.ts';
-import { columnsOf, expectSound, recipeOf } from '#support/meshes.ts';
+import { expectSound } from '#support/meshes.ts';
+import { columnsOf, recipeOf } from '#support/point-sets.ts';
 
 const RUNS = process.env['SELVAGE_NIGHTLY'] === '1' ? 3000 : 100;
 

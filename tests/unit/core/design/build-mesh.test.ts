@@ -2,63 +2,37 @@ import { createHash } from 'node:crypto';
 
 import { afterEach, describe, expect, it, vi } from 'vitest';
 
+import type { DesignedMesh } from '#core/design/designed-mesh.ts';
 import { createRecipeRunner, runRecipe } from '#core/design/run-recipe.ts';
 import { NumericalError } from '#core/errors.ts';
 import { assembleMatrices } from '#core/fem/assembly.ts';
-import type { CoordinateReference } from '#core/geometry/mesh.ts';
 import { meshBytes } from '#core/geometry/mesh-bytes.ts';
+import { nodePositions } from '#core/geometry/positions.ts';
 import { elementQuality } from '#core/geometry/quality.ts';
-import { greatCircleKm } from '#core/geometry/sphere.ts';
+import { sphericalExcess } from '#core/geometry/sphere.ts';
 import { createStereographic } from '#core/geometry/stereographic.ts';
 import { nonDelaunayEdges } from '#core/geometry/validate.ts';
-import { columnsOf, expectSound, recipeOf, seeded } from '#support/meshes.ts';
+import { expectSound } from '#support/meshes.ts';
+import { angleBetween, distanceToRing, placeBetween, vectorOf } from '#support/outline-distance.ts';
+import type { Place } from '#support/point-sets.ts';
+import { columnsOf, recipeOf, scattered, wrapped } from '#support/point-sets.ts';
 
 const R = 6371;
 const options = { sphereRadiusKm: R };
 
-const scattered = (count: number, seed: number, [west, south, east, north]: [number, number, number, number]): [number, number][] => {
-  const random = seeded(seed);
-  return Array.from({ length: count }, () => [west + (east - west) * random(), south + (north - south) * random()]);
-};
 const hashOf = (mesh: Parameters<typeof meshBytes>[0]): string => createHash('sha256').update(meshBytes(mesh)).digest('hex');
 
-/** Distance of a place to a line of ground points, by brute force over densely sampled sides. */
-const distanceToOutline = (crs: CoordinateReference, outline: Float64Array, x: number, y: number): number => {
-  let least = Infinity;
-  const n = outline.length / 2;
-  const projection = createStereographic(outline[0], outline[1], R);
-  const p = new Float64Array(9);
-  for (let i = 0; i < n; i++) {
-    const [ax, ay, bx, by] = [outline[2 * i], outline[2 * i + 1], outline[2 * ((i + 1) % n)], outline[2 * ((i + 1) % n) + 1]];
-    for (let k = 0; k <= 400; k++) {
-      const t = k / 400;
-      if (crs === 'plane-km') {
-        least = Math.min(least, Math.hypot(x - ax - t * (bx - ax), y - ay - t * (by - ay)));
-        continue;
-      }
-      // a great circle's points are the normalised chord's; the projection's inverse of its forward gives lon, lat
-      const rad = Math.PI / 180;
-      const a = [Math.cos(ay * rad) * Math.cos(ax * rad), Math.cos(ay * rad) * Math.sin(ax * rad), Math.sin(ay * rad)];
-      const b = [Math.cos(by * rad) * Math.cos(bx * rad), Math.cos(by * rad) * Math.sin(bx * rad), Math.sin(by * rad)];
-      const c = a.map((v, d) => v + t * (b[d] - v));
-      const r = Math.hypot(...c);
-      least = Math.min(least, greatCircleKm(x, y, Math.atan2(c[1], c[0]) / rad, Math.asin(c[2] / r) / rad, R));
-    }
-  }
-  projection.forward(x, y, p, 0);
-  return least;
-};
-
-const boundaryDistances = (mesh: ReturnType<typeof runRecipe>['mesh']): number[] =>
+/** Distances to the outline from four places on every boundary edge, in buffers. */
+const boundaryDistances = (mesh: DesignedMesh, bufferKm: number): number[] =>
   mesh.boundaryLoops.flatMap((loop) =>
-    [...loop].flatMap((node, k) => {
-      const next = loop[(k + 1) % loop.length];
+    Array.from(loop, (node, k) => {
       const c = mesh.coordinates;
-      // the middle of an edge is where a chord comes nearest
-      const middle: [number, number] = [(c[2 * node] + c[2 * next]) / 2, (c[2 * node + 1] + c[2 * next + 1]) / 2];
-      const here = distanceToOutline(mesh.crs, mesh.outline[0], c[2 * node], c[2 * node + 1]);
-      return mesh.crs === 'plane-km' ? [here, distanceToOutline(mesh.crs, mesh.outline[0], ...middle)] : [here];
-    }),
+      const next = loop[(k + 1) % loop.length];
+      return [0, 0.25, 0.5, 0.75].map((share) => {
+        const [x, y] = placeBetween(mesh.crs, [c[2 * node], c[2 * node + 1]], [c[2 * next], c[2 * next + 1]], share);
+        return distanceToRing(mesh.crs, mesh.outline[0], x, y, R) / bufferKm;
+      });
+    }).flat(),
   );
 
 describe('a mesh in the plane', () => {
@@ -67,10 +41,7 @@ describe('a mesh in the plane', () => {
   it('is sound, holds every observation, and keeps the buffer within 1 %', () => {
     const { mesh, selected } = runRecipe(columns, recipeOf({ bufferKm: 150 }), options);
     expectSound(mesh, selected);
-    for (const d of boundaryDistances(mesh)) {
-      expect(d).toBeGreaterThan(0.99 * 150);
-      expect(d).toBeLessThan(1.01 * 150);
-    }
+    for (const d of boundaryDistances(mesh, 150)) expect(Math.abs(d - 1)).toBeLessThan(0.01);
   });
 
   it('has the area of a box pushed out with round corners (Steiner: A + perimeter B + pi B²)', () => {
@@ -154,25 +125,72 @@ describe('a mesh in the plane', () => {
 });
 
 describe('a mesh on the sphere', () => {
-  const regions: [string, [number, number][]][] = [
-    ['mid-latitudes', scattered(200, 11, [-30, 40, -10, 55])],
-    ['across the antimeridian', scattered(200, 12, [170, -15, 190, 5]).map(([lon, lat]) => [lon >= 180 ? lon - 360 : lon, lat])],
-    ['round the north pole', scattered(200, 13, [-180, 75, 180, 90])],
-    ['round the south pole', scattered(150, 14, [-180, -90, 180, -80])],
-    ['with a station at the pole', [[0, 90], [0, 80], [120, 80], [-120, 80], [60, 85]]],
+  const regions: { name: string; points: Place[] }[] = [
+    { name: 'mid-latitudes', points: scattered(200, 11, [-30, 40, -10, 55]) },
+    { name: 'across the antimeridian', points: wrapped(scattered(200, 12, [170, -15, 190, 5])) },
+    { name: 'round the north pole', points: scattered(200, 13, [-180, 75, 180, 90]) },
+    { name: 'round the south pole', points: scattered(150, 14, [-180, -90, 180, -80]) },
+    { name: 'a station at the pole', points: [[0, 90], [0, 80], [120, 80], [-120, 80], [60, 85]] },
+    { name: 'nearly a hemisphere', points: scattered(200, 15, [-180, 15, 180, 90]) },
   ];
 
-  it.each(regions)('%s: is sound and keeps the buffer within 1 %%', (_name, points) => {
+  it.each(regions)('$name: is sound and keeps the buffer within 1 %', ({ points }) => {
     const { mesh, selected } = runRecipe(columnsOf('lonlat-deg', points), recipeOf({ bufferKm: 300, coreSpacingKm: 150 }), options);
     expectSound(mesh, selected);
-    for (const d of boundaryDistances(mesh)) {
-      expect(d).toBeGreaterThan(0.99 * 300);
-      expect(d).toBeLessThan(1.01 * 300);
+    for (const d of boundaryDistances(mesh, 300)) expect(Math.abs(d - 1)).toBeLessThan(0.01);
+  });
+
+  it.each(regions)('$name: squares corners off nowhere nearer than the buffer, nor farther than its tangents', ({ points }) => {
+    const { mesh, selected } = runRecipe(columnsOf('lonlat-deg', points), recipeOf({ bufferKm: 300, coreSpacingKm: 150, corners: 'square' }), options);
+    expectSound(mesh, selected);
+    for (const d of boundaryDistances(mesh, 300)) {
+      expect(d).toBeGreaterThan(0.99);
+      expect(d).toBeLessThan(Math.SQRT2);
+    }
+  });
+
+  it('has the area of the outline pushed out (Steiner on the sphere: 2 pi (1 - cos b) + L sin b + A cos b; Santaló 1976)', () => {
+    const points: Place[] = [[0, 0], [30, 0], [30, 40], [5, 45]];
+    const bufferKm = 600;
+    const { mesh } = runRecipe(columnsOf('lonlat-deg', points), recipeOf({ bufferKm, coreSpacingKm: 150 }), options);
+    const vectors = new Float64Array(nodePositions(mesh).map((v) => v / R));
+    let area = 0;
+    for (let t = 0; t < mesh.triangles.length; t += 3) area += sphericalExcess(vectors, 3 * mesh.triangles[t], 3 * mesh.triangles[t + 1], 3 * mesh.triangles[t + 2]);
+    const corners = points.map(([lon, lat]) => vectorOf(lon, lat));
+    const length = corners.reduce((sum, v, k) => sum + angleBetween(v, corners[(k + 1) % 4]), 0);
+    // Girard: the outline's area is 2 pi less its exterior angles
+    const inside = 2 * Math.PI - mesh.outlineCorners.reduce((sum, corner) => sum + corner.turning, 0);
+    const beta = bufferKm / R;
+    const exact = 2 * Math.PI * (1 - Math.cos(beta)) + length * Math.sin(beta) + inside * Math.cos(beta);
+    expect(area / exact).toBeGreaterThan(0.997);
+    expect(area / exact).toBeLessThan(1.0005);
+  });
+
+  it.each([1, 4, 10, 51])('has the same triangles when all observations are turned over a pole or the antimeridian (seed %i)', (seed) => {
+    const points = scattered(200, seed, [-30, 40, -10, 55]);
+    const turn = (v: number[], i: number, j: number, by: number): number[] => {
+      const w = [...v];
+      w[i] = v[i] * Math.cos(by) - v[j] * Math.sin(by);
+      w[j] = v[i] * Math.sin(by) + v[j] * Math.cos(by);
+      return w;
+    };
+    const turned = (about: number, over: number): Place[] =>
+      points.map(([lon, lat]) => {
+        const [x, y, z] = turn(turn([...vectorOf(lon, lat)], 0, 1, about), 0, 2, over);
+        return [(Math.atan2(y, x) * 180) / Math.PI, (Math.asin(z) * 180) / Math.PI];
+      });
+    const recipe = recipeOf({ bufferKm: 300 });
+    const still = runRecipe(columnsOf('lonlat-deg', points), recipe, options).mesh;
+    const { areaKm2 } = elementQuality(still);
+    for (const [about, over] of [[2.9, 0], [0, 0.8], [1, 2]] as const) {
+      const { mesh } = runRecipe(columnsOf('lonlat-deg', turned(about, over)), recipe, options);
+      expect([...mesh.triangles]).toEqual([...still.triangles]);
+      elementQuality(mesh).areaKm2.forEach((area, t) => expect(Math.abs(area / areaKm2[t] - 1)).toBeLessThan(1e-9));
     }
   });
 
   it('is spherical Delaunay: the triangulation of another stereographic projection passes the exact test too', () => {
-    const { mesh } = runRecipe(columnsOf('lonlat-deg', regions[1][1]), recipeOf({ bufferKm: 300, coreSpacingKm: 150 }), options);
+    const { mesh } = runRecipe(columnsOf('lonlat-deg', regions[1].points), recipeOf({ bufferKm: 300, coreSpacingKm: 150 }), options);
     const projection = createStereographic(171, 4, R);
     const plane = new Float64Array(mesh.coordinates.length);
     for (let i = 0; i < plane.length / 2; i++) projection.forward(mesh.coordinates[2 * i], mesh.coordinates[2 * i + 1], plane, 2 * i);
@@ -217,7 +235,7 @@ describe('determinism', () => {
   afterEach(() => void vi.restoreAllMocks());
 
   it('uses none of the functions whose bits depend on the platform, nor chance, nor the clock', () => {
-    const points = scattered(120, 21, [170, 60, 200, 75]).map(([lon, lat]): [number, number] => [lon > 180 ? lon - 360 : lon, lat]);
+    const points = wrapped(scattered(120, 21, [170, 60, 200, 75]));
     const expected = hashOf(runRecipe(columnsOf('lonlat-deg', points), recipeOf({ bufferKm: 200 }), options).mesh);
     for (const name of ['sin', 'cos', 'tan', 'asin', 'acos', 'atan', 'atan2', 'exp', 'log', 'log2', 'log10', 'pow', 'hypot', 'cbrt', 'sinh', 'random'] as const)
       vi.spyOn(Math, name).mockImplementation(() => {
@@ -234,7 +252,7 @@ describe('determinism', () => {
 
   it('gives the bytes it gave before: a recorded hash', () => {
     const { mesh } = runRecipe(columnsOf('lonlat-deg', scattered(100, 33, [-5, 50, 5, 56])), recipeOf({ bufferKm: 150 }), options);
-    expect(hashOf(mesh)).toMatchInlineSnapshot(`"0a81f75083b0bffa74b8942aa0bc2b70cb015bba218e2c16a4694d1599a0d95d"`);
+    expect(hashOf(mesh)).toMatchInlineSnapshot(`"c1d8478f7b78f107a2b78741cd25419f097bf5f43451b5a3592d4a4976e99582"`);
   });
 
   it('gives the same bytes when a runner keeps what the buffer does not change', () => {
