@@ -105,12 +105,20 @@ export async function parseBody<T extends z.ZodType>(request: Request, schema: T
   const text = await readText(request, limit);
   let value: unknown;
   try {
-    value = JSON.parse(text);
+    value = JSON.parse(text, (_key, part: unknown) => (typeof part === 'string' ? storable(part) : part));
   } catch (cause) {
+    if (cause instanceof AppError) throw cause;
     const why = cause instanceof Error ? cause.message : 'it could not be read';
     throw new AppError('BODY_NOT_JSON', `The body is not valid JSON: ${why}. Correct it and send it again.`, { cause });
   }
   return parseValue(schema, value);
+}
+
+/** Text that the database can hold. @throws AppError VALIDATION_FAILED for a null character or half of one */
+function storable(text: string): string {
+  if (/\0|\p{Cs}/u.test(text))
+    throw new AppError('VALIDATION_FAILED', 'The request is not valid. A text in it holds a null character or half of a character, which cannot be stored. Remove it.');
+  return text;
 }
 
 /** The query of `url` in the shape of `schema`; a repeated name counts once, with its last value. @throws AppError VALIDATION_FAILED */

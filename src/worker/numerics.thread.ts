@@ -25,8 +25,28 @@ export interface ThreadProgress {
 
 export interface ThreadTools {
   report(fraction: number, phase: string): void;
-  sendBatch(batch: unknown): void;
+  /** Hands a batch over; resolves when the other side keeps up. */
+  sendBatch(batch: unknown): Promise<void>;
 }
+
+/** Batches under way before a thread waits. */
+const BATCHES_AHEAD = 4;
+
+/** Sends batches through a port, each answered by any message when it has been dealt with. */
+const createBatchSender = (port: MessagePort): ThreadTools['sendBatch'] => {
+  let underWay = 0;
+  let resume: (() => void) | undefined;
+  port.on('message', () => {
+    underWay--;
+    resume?.();
+  });
+  port.unref();
+  return async (batch) => {
+    port.postMessage({ fraction: 0, phase: '', batch } satisfies ThreadProgress);
+    underWay++;
+    while (underWay >= BATCHES_AHEAD) await new Promise<void>((resolve) => (resume = resolve));
+  };
+};
 
 const answer = (call: ThreadCall, tools: ThreadTools): unknown => {
   if (call.kind === 'read-observations') return readObservations(call, tools);
@@ -37,7 +57,7 @@ const answer = (call: ThreadCall, tools: ThreadTools): unknown => {
 export default async ({ call, port }: { call: ThreadCall; port: MessagePort }): Promise<{ value: unknown } | { error: ThreadError }> => {
   const tools: ThreadTools = {
     report: (fraction, phase) => port.postMessage({ fraction, phase } satisfies ThreadProgress),
-    sendBatch: (batch) => port.postMessage({ fraction: 0, phase: '', batch } satisfies ThreadProgress),
+    sendBatch: createBatchSender(port),
   };
   try {
     return { value: await answer(call, tools) };

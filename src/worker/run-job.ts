@@ -4,6 +4,7 @@ import { NumericalError } from '#core/errors.ts';
 import { JobRow } from '#db/models/JobRow.ts';
 import { getDatabase } from '#server/database.ts';
 import { AppError } from '#server/errors.ts';
+import { removeUnreadFiles } from '#server/observations/store-upload.ts';
 import { toProblem } from '#server/respond.ts';
 import type { Logger } from '#server/log.ts';
 
@@ -108,7 +109,7 @@ export const runJob = async (jobId: string, { registry, log, stopping, onAlive }
 /** Minutes without a sign of life after which a running job counts as lost: the queue has given up on it long before. */
 const LOST_MINUTES = 10;
 
-/** Fails jobs that no worker has carried on, so that nobody waits for them. Returns how many. */
+/** Fails jobs that no worker has carried on, so that nobody waits for them, and removes what they leave. Returns how many. */
 export const failLostJobs = async (): Promise<number> => {
   const [count] = await JobRow.update(
     {
@@ -119,5 +120,6 @@ export const failLostJobs = async (): Promise<number> => {
     },
     { where: { state: 'running', heartbeatAt: { [Op.lt]: new Date(Date.now() - LOST_MINUTES * 60_000) } } },
   );
+  await removeUnreadFiles();
   return count;
 };

@@ -29,8 +29,8 @@ export interface ThreadOptions {
   /** Ends the thread at once when aborted. */
   signal?: AbortSignal;
   onProgress?: (fraction: number, phase: string) => void;
-  /** Batches that the call hands over before it ends. */
-  onBatch?: (batch: unknown) => void;
+  /** Batches that the call hands over before it ends, one at a time; what this throws ends the call. */
+  onBatch?: (batch: unknown) => Promise<void>;
 }
 
 /** Runs one call of `numerics.thread.ts` in a thread of its own. @throws NumericalError as the call threw it; the signal's reason when aborted */
@@ -39,18 +39,27 @@ export const runInThread = async <T>(call: ThreadCall, { signal, onProgress, onB
   let end: () => void = () => undefined;
   // the last message comes after every batch, which the call's answer need not
   const ended = new Promise<void>((resolve) => (end = resolve));
+  const failed = new AbortController();
+  const stop = signal ? AbortSignal.any([signal, failed.signal]) : failed.signal;
+  let handling: Promise<void> = Promise.resolve();
   port1.on('message', (message: ThreadProgress) => {
     if (message.isLast) end();
-    else if (message.batch !== undefined) onBatch?.(message.batch);
-    else onProgress?.(message.fraction, message.phase);
+    else if (message.batch === undefined) onProgress?.(message.fraction, message.phase);
+    else
+      handling = handling
+        .then(() => (stop.aborted ? undefined : onBatch?.(message.batch)))
+        .then(() => port1.postMessage(null))
+        .catch((error: unknown) => failed.abort(error));
   });
   try {
-    const answer = (await getPool().run({ call, port: port2 }, { transferList: [port2], signal })) as { value: T } | { error: ThreadError };
+    const answer = (await getPool().run({ call, port: port2 }, { transferList: [port2], signal: stop })) as { value: T } | { error: ThreadError };
     await ended;
+    await handling;
+    stop.throwIfAborted();
     if ('error' in answer) throw new NumericalError(answer.error.code as NumericalErrorCode, answer.error.message, { details: answer.error.details });
     return answer.value;
   } catch (error) {
-    if (signal?.aborted) throw signal.reason;
+    if (stop.aborted) throw stop.reason;
     throw error;
   } finally {
     port1.close();

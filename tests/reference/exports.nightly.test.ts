@@ -39,7 +39,7 @@ const facts = {
   recipe: { note: 'flag “good”' },
   correlation: {},
 };
-const { exports } = makeExports({ kind: 'make-exports', arrays: packMesh({ mesh, selected }), facts }, { report: () => undefined, sendBatch: () => undefined });
+const { exports } = makeExports({ kind: 'make-exports', arrays: packMesh({ mesh, selected }), facts }, { report: () => undefined, sendBatch: async () => undefined });
 
 describe('exports in independent readers', () => {
   let folder = '';

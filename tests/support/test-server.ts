@@ -18,6 +18,8 @@ export interface TestServerOptions {
 export interface TestServer {
   /** http://127.0.0.1:port, without a slash at the end. */
   url: string;
+  /** Whether it is the build, with the product's own HTTP server in front, and not Astro's development server. */
+  isBuilt: boolean;
   /** What the processes wrote so far. */
   output(): string;
   /** Ends what was started; rejects when a process had already ended by itself. */
@@ -65,6 +67,7 @@ export async function startTestServer(options: TestServerOptions): Promise<TestS
   }
   return {
     url,
+    isBuilt: build !== undefined,
     output,
     async stop() {
       const crashed = processes.filter((one) => one.hasEnded());

@@ -7,6 +7,7 @@ import type { List, ListQuery } from '#schemas/list.ts';
 import type { Context } from '../context.ts';
 import { getDatabase } from '../database.ts';
 import { AppError, notFound } from '../errors.ts';
+import { removeUnreadFiles } from '../observations/store-upload.ts';
 import { afterCursor, pageOf, requireId } from '../pages-of-lists.ts';
 import { type Action, authorize } from '../policies.ts';
 import { sendMessage } from './queue.ts';
@@ -78,7 +79,7 @@ export const cancelJob = async (ctx: Context, jobId: string | undefined): Promis
   if (waiting === 0) {
     const [running] = await JobRow.update({ cancelRequested: true }, { where: { id: job.id, state: 'running' } });
     if (running === 0) throw new AppError('JOB_FINISHED', 'This job has already ended, so there is nothing to cancel.');
-  }
+  } else if (job.kind === 'read-observations') await removeUnreadFiles();
   await job.reload();
   return presentJob(job);
 };

@@ -1,6 +1,6 @@
 import { randomUUID } from 'node:crypto';
 
-import { ForeignKeyConstraintError } from 'sequelize';
+import { ForeignKeyConstraintError, Op } from 'sequelize';
 import type { z } from 'zod/v4';
 
 import { ObservationSetRow } from '#db/models/ObservationSetRow.ts';
@@ -19,7 +19,7 @@ import { afterCursor, pageOf, requireId } from '../pages-of-lists.ts';
 import { type Action, authorize } from '../policies.ts';
 import { parseValue } from '../respond.ts';
 import { loadStudy } from '../studies/studies.ts';
-import { readStoredFile, receiveUpload, storeFile } from './store-upload.ts';
+import { readStoredFile, receiveUpload, storeFile, tidyText } from './store-upload.ts';
 
 const LIST_COLUMNS = { exclude: ['columnsBundle'] };
 
@@ -85,7 +85,7 @@ export const createObservationSet = async (ctx: Context, studyId: string | undef
   const upload = await receiveUpload(request);
   try {
     const mapping = parseMapping(upload.fields.get('mapping'));
-    const name = (upload.fields.get('name') ?? '').trim().slice(0, 120) || upload.fileName;
+    const name = tidyText(upload.fields.get('name') ?? '', 120) || upload.fileName;
     return await inTransaction(async (transaction) => {
       const file = await storeFile(upload, study.teamId, transaction);
       const payload = { studyId: study.id, fileId: file.id, observationSetId: randomUUID(), name, mapping: mapping ?? null };
@@ -137,7 +137,8 @@ export const listRejected = async (ctx: Context, setId: string | undefined, quer
 };
 
 const rejectedFrom = async (observationSetId: string, offset: number, limit: number): Promise<RejectedRow[]> => {
-  const rows = await RejectedRowRow.findAll({ where: { observationSetId }, order: [['number', 'ASC']], offset, limit });
+  // numbered from 0 without gaps
+  const rows = await RejectedRowRow.findAll({ where: { observationSetId, number: { [Op.gte]: offset } }, order: [['number', 'ASC']], limit });
   return rows.map(({ line, field, found, reason }) => ({ line, field, found, reason }));
 };
 

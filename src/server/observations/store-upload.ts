@@ -8,11 +8,12 @@ import { pipeline } from 'node:stream/promises';
 import type { ReadableStream as WebStream } from 'node:stream/web';
 
 import Busboy from '@fastify/busboy';
-import type { Transaction } from 'sequelize';
+import { QueryTypes, type Transaction } from 'sequelize';
 
 import { StoredFile } from '#db/models/StoredFile.ts';
 import { StoredFileChunk } from '#db/models/StoredFileChunk.ts';
 
+import { getDatabase } from '../database.ts';
 import { getEnv } from '../env.ts';
 import { AppError } from '../errors.ts';
 
@@ -28,10 +29,14 @@ export interface ReceivedUpload {
   discard(): Promise<void>;
 }
 
+/** Text without control characters, halves of characters and outer blanks, at most `most` characters of it. */
+export const tidyText = (text: string, most: number): string =>
+  [...text.replace(/[\p{Cc}\p{Cf}\p{Cs}]/gu, '').trim()].slice(0, most).join('').trim();
+
 /** File name as shown and offered again: without folders and control characters, at most 200 characters. */
 export const tidyFileName = (name: string | undefined): string => {
-  const base = (name ?? '').split(/[/\\]/).at(-1)!.replace(/[\p{Cc}\p{Cf}]/gu, '').trim();
-  return (base === '' || base === '.' || base === '..' ? 'observations' : base).slice(0, 200);
+  const base = tidyText((name ?? '').split(/[/\\]/).at(-1)!, 200);
+  return base === '' || base === '.' || base === '..' ? 'observations' : base;
 };
 
 const tooLarge = (limit: number): AppError =>
@@ -107,3 +112,21 @@ export async function* readStoredFile(fileId: string): AsyncGenerator<Buffer> {
     yield chunk.bytes;
   }
 }
+
+/**
+ * Deletes files that no observation set holds and no job will read any more: what was cancelled before it began, or
+ * given up with its worker. Returns how many.
+ */
+export const removeUnreadFiles = async (): Promise<number> => {
+  const rows = await getDatabase().query(
+    `DELETE FROM stored_files f
+     WHERE NOT EXISTS (SELECT 1 FROM observation_sets o WHERE o.file_id = f.id)
+       AND NOT EXISTS (
+         SELECT 1 FROM jobs j
+         WHERE j.kind = 'read-observations' AND j.state IN ('queued', 'running', 'paused') AND j.payload ->> 'fileId' = f.id::text
+       )
+     RETURNING f.id`,
+    { type: QueryTypes.SELECT },
+  );
+  return rows.length;
+};

@@ -26,6 +26,9 @@ export interface ReadAnswer {
   columnsBundle: Uint8Array;
 }
 
+/** Rejected rows that a refused file's problem tells of. */
+const REJECTED_SHOWN = 20;
+
 /** Columns and everything known of an uploaded file; rejected rows go out in batches. @throws NumericalError of the readers */
 export const readObservations = async ({ chunks, mapping }: ReadCall, tools: ThreadTools): Promise<ReadAnswer> => {
   const total = chunks.reduce((sum, chunk) => sum + chunk.length, 0);
@@ -33,7 +36,7 @@ export const readObservations = async ({ chunks, mapping }: ReadCall, tools: Thr
   const options = {
     onProgress: ({ bytes, rows }: { bytes: number; rows: number }) => tools.report((0.9 * bytes) / total, `reading: ${rows.toLocaleString('en')} rows`),
     onRejected: (batch: unknown) => tools.sendBatch(batch),
-    maxRejectedKept: 0,
+    maxRejectedKept: REJECTED_SHOWN,
   };
   const result = format === 'csv' ? await readCsvObservations(chunks, mapping, options) : await readGeoJsonObservations(joined(chunks, total), mapping, options);
   return {

@@ -1,8 +1,9 @@
+import type { Transaction } from 'sequelize';
+
 import { ObservationSetRow } from '#db/models/ObservationSetRow.ts';
-import { RejectedRowRow } from '#db/models/RejectedRowRow.ts';
 import { StoredFile } from '#db/models/StoredFile.ts';
 import type { Mapping, RejectedRow } from '#schemas/observation-sets.ts';
-import { inTransaction } from '#server/database.ts';
+import { getDatabase, inTransaction } from '#server/database.ts';
 import { AppError } from '#server/errors.ts';
 import { readStoredFile } from '#server/observations/store-upload.ts';
 
@@ -25,6 +26,19 @@ const resultOf = (set: Pick<ObservationSetRow, 'id' | 'rowsRead' | 'accepted' | 
   rejectedCount: set.rejectedCount,
 });
 
+/** Rejected rows in one statement of four arrays: a row at a time takes ten times as long. */
+const writeRejected = async (observationSetId: string, from: number, batch: RejectedRow[], transaction: Transaction): Promise<void> => {
+  await getDatabase().query(
+    `INSERT INTO rejected_rows (observation_set_id, number, line, field, found, reason)
+     SELECT $1::uuid, $2::int + ordinality - 1, line, field, found, reason
+     FROM unnest($3::int[], $4::text[], $5::text[], $6::text[]) WITH ORDINALITY AS row (line, field, found, reason, ordinality)`,
+    {
+      bind: [observationSetId, from, batch.map((row) => row.line), batch.map((row) => row.field), batch.map((row) => row.found), batch.map((row) => row.reason)],
+      transaction,
+    },
+  );
+};
+
 /** Reads an uploaded file into an observation set. The set appears whole or not at all; a file that cannot be read goes. */
 export const readObservationsTask: Task = async (payload, { teamId, userId, signal, reportProgress }) => {
   const { studyId, fileId, observationSetId, name, mapping } = payload as unknown as Payload;
@@ -40,18 +54,15 @@ export const readObservationsTask: Task = async (payload, { teamId, userId, sign
   }
   try {
     return await inTransaction(async (transaction) => {
-      let number = 0;
-      let writing: Promise<unknown> = Promise.resolve();
-      const write = (batch: RejectedRow[]): void => {
-        const rows = batch.map((row) => ({ ...row, observationSetId, number: number++ }));
-        writing = writing.then(() => RejectedRowRow.bulkCreate(rows, { transaction }));
-        writing.catch(() => undefined);
+      let written = 0;
+      const write = async (batch: RejectedRow[]): Promise<void> => {
+        await writeRejected(observationSetId, written, batch, transaction);
+        written += batch.length;
       };
       const answer = await runInThread<ReadAnswer>(
         { kind: 'read-observations', chunks, mapping: mapping ?? undefined },
         { signal, onProgress: reportProgress, onBatch: (batch) => write(batch as RejectedRow[]) },
       );
-      await writing;
       signal.throwIfAborted();
       reportProgress(0.95, 'writing the observation set');
       const { columnsBundle, ...facts } = answer;
