@@ -24,8 +24,16 @@ export function createLogger(
       censor: '[redacted]',
     },
   };
-  return destination === undefined ? pino(settings) : pino(settings, destination);
+  return pino(settings, destination ?? standardOutput());
 }
+
+/** Not pino's own writer: with two lines pending at exit and a reader that is gone, its last flush tries for ever. Lines for nobody are dropped. */
+function standardOutput(): { write(line: string): void } {
+  if (!process.stdout.listeners('error').includes(dropLine)) process.stdout.on('error', dropLine);
+  return process.stdout;
+}
+
+function dropLine(): void {}
 
 let root: Logger | undefined;
 
