@@ -3,7 +3,7 @@ import fs from 'node:fs';
 import os from 'node:os';
 import path from 'node:path';
 
-import { freePort } from '../../db/private-postgres.js';
+import { findSetpriv, freePort } from '../../db/private-postgres.js';
 
 const ROOT = path.resolve(import.meta.dirname, '../..');
 
@@ -16,7 +16,10 @@ export default async function setup(): Promise<() => Promise<void>> {
   const folder = fs.mkdtempSync(path.join(os.tmpdir(), 'selvage-browser-'));
   fs.chmodSync(folder, 0o711);
   const port = await freePort();
-  const child = spawn(process.execPath, ['src/launch/start.js'], {
+  const guard = findSetpriv();
+  const command = [process.execPath, 'src/launch/start.js'];
+  const [program = process.execPath, ...rest] = guard === undefined ? command : [guard, '--pdeathsig', 'TERM', ...command];
+  const child = spawn(program, rest, {
     cwd: ROOT,
     env: {
       ...process.env,

@@ -3,7 +3,7 @@ import fs from 'node:fs';
 import os from 'node:os';
 import path from 'node:path';
 
-import { isAlive, readCommand } from '../../db/private-postgres.js';
+import { findSetpriv, isAlive, readCommand } from '../../db/private-postgres.js';
 
 export const ROOT = path.resolve(import.meta.dirname, '../..');
 
@@ -21,7 +21,11 @@ export interface Launched {
 
 /** Runs `npm start`'s program. The test ends it; DATABASE_URL and the data folder come from `env` alone. */
 export function launch(env: Record<string, string>, options: SpawnOptions = {}): Launched {
-  const child = spawn(process.execPath, ['src/launch/start.js'], {
+  // Should the test run be killed, the launcher is told to stop.
+  const guard = findSetpriv();
+  const command = [process.execPath, 'src/launch/start.js'];
+  const [program = process.execPath, ...rest] = guard === undefined ? command : [guard, '--pdeathsig', 'TERM', ...command];
+  const child = spawn(program, rest, {
     cwd: ROOT,
     stdio: ['ignore', 'pipe', 'pipe'],
     ...options,
