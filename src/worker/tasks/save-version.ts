@@ -61,8 +61,8 @@ export const saveVersionTask: Task = async (payload, context) => {
   const savedAt = new Date();
   const versionId = randomUUID();
   return inTransaction(async (transaction) => {
-    // versions of one study are numbered one after the other
-    await getDatabase().query('SELECT id FROM studies WHERE id = :studyId FOR UPDATE', { replacements: { studyId }, transaction });
+    // versions of one study are numbered one after the other; designs and uploads of the study need not wait
+    await getDatabase().query('SELECT id FROM studies WHERE id = :studyId FOR NO KEY UPDATE', { replacements: { studyId }, transaction });
     const [{ next }] = await getDatabase().query<{ next: number }>('SELECT coalesce(max(number), 0) + 1 AS next FROM mesh_versions WHERE study_id = :studyId', {
       replacements: { studyId },
       transaction,

@@ -106,6 +106,34 @@ describe('a mesh in the plane', () => {
     expect(ratios[Math.floor(0.95 * ratios.length)]).toBeLessThan(1.5);
   });
 
+  it('has elements no larger than the core spacing plus the growth times the distance from the outline', () => {
+    const [coreSpacingKm, growth] = [20, 1.3];
+    const { mesh } = runRecipe(columns, recipeOf({ bufferKm: 400, growth, coreSpacingKm }), options);
+    const { longestEdgeKm } = elementQuality(mesh);
+    const c = mesh.coordinates;
+    // an element of size h has a circumradius of at most 0.84 h; the mean of three corners' sizes is no more than the largest
+    for (let t = 0; t < longestEdgeKm.length; t++) {
+      const reach = Math.max(...[0, 1, 2].map((k) => distanceToRing('plane-km', mesh.outline[0], c[2 * mesh.triangles[3 * t + k]], c[2 * mesh.triangles[3 * t + k] + 1], R)));
+      const size = coreSpacingKm + ((2 * (growth - 1)) / (growth + 1)) * reach;
+      expect(longestEdgeKm[t]).toBeLessThan(2 * 0.84 * size);
+    }
+  });
+
+  it('grows from a dense cluster no faster than asked', () => {
+    const cluster = scattered(300, 18, [480, 280, 520, 320]);
+    const around: Place[] = [[0, 0], [1000, 0], [1000, 600], [0, 600]];
+    const { mesh, selected } = runRecipe(columnsOf('plane-km', [...cluster, ...around]), recipeOf({ bufferKm: 200, coreSpacingKm: 100 }), options);
+    expectSound(mesh, selected);
+    const { longestEdgeKm } = elementQuality(mesh);
+    const slope = (2 * 0.2) / 2.2;
+    for (let t = 0; t < longestEdgeKm.length; t++) {
+      const nodes = [...mesh.triangles.slice(3 * t, 3 * t + 3)];
+      const away = Math.max(...nodes.map((i) => Math.max(0, Math.hypot(mesh.coordinates[2 * i] - 500, mesh.coordinates[2 * i + 1] - 300) - 20)));
+      // the cluster's own largest spacing is below 8 km
+      expect(longestEdgeKm[t]).toBeLessThan(2 * 0.84 * (8 + slope * away));
+    }
+  });
+
   it('fills a gap down to the core spacing', () => {
     const { mesh } = runRecipe(columnsOf('plane-km', [[0, 0], [500, 0], [500, 500], [0, 500]]), recipeOf({ bufferKm: 100, coreSpacingKm: 40 }), options);
     const { longestEdgeKm } = elementQuality(mesh);
@@ -223,6 +251,21 @@ describe('errors', () => {
   it('a buffer too small for the core spacing asks for too many boundary nodes', () => {
     const columns = columnsOf('plane-km', [[0, 0], [10_000, 0], [0, 10_000]]);
     expect(code(() => runRecipe(columns, recipeOf({ bufferKm: 0.001, coreSpacingKm: 100 }), options))).toBe('MESH_TOO_LARGE');
+  });
+
+  it('a buffer that would wrap round the globe', () => {
+    const columns = columnsOf('lonlat-deg', scattered(100, 6, [-180, 20, 180, 90]));
+    expect(code(() => runRecipe(columns, recipeOf({ bufferKm: 8500, coreSpacingKm: 500 }), options))).toBe('POINTS_TOO_WIDE');
+  });
+
+  it.each([
+    ['bufferKm', recipeOf({ bufferKm: 0 })],
+    ['bufferKm', recipeOf({ bufferKm: NaN })],
+    ['growth', recipeOf({ bufferKm: 10, growth: 1 })],
+    ['coreSpacingKm', recipeOf({ bufferKm: 10, coreSpacingKm: -1 })],
+  ])('a recipe with a bad %s names it', (field, recipe) => {
+    const columns = columnsOf('plane-km', [[0, 0], [100, 0], [0, 100]]);
+    expect(() => runRecipe(columns, recipe, options)).toThrow(expect.objectContaining({ code: 'RECIPE_INVALID', details: { field } }) as NumericalError);
   });
 
   it('cancels', () => {

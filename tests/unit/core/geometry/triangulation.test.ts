@@ -171,6 +171,12 @@ describe('refinement', () => {
     }
   });
 
+  it('mends the small angle at a short edge from an input vertex to another vertex', () => {
+    // 5.2 from a boundary vertex, where triangles may otherwise be as large as the whole square
+    const t = plain(100, 1, [[50, 5.2]]);
+    expect(Math.min(...elementQuality(meshOf(t)).smallestAngle)).toBeGreaterThan(24.9);
+  });
+
   it('stops at the largest number of vertices and when cancelled', () => {
     const t = triangulate(flat([[0, 0], [1000, 0], [1000, 1000], [0, 1000]]));
     cutToLoops(t, [Uint32Array.of(0, 1, 2, 3)], [new Float64Array(4)]);
